@@ -1,0 +1,117 @@
+import { describe, expect, it } from 'vitest';
+import { columnMoments, shareCovariances, shareMoments } from '../../../src/posterior/share-moments';
+import { deviation, shareQuadrature } from '../../../src/posterior/share-quadrature';
+import reference from '../../reference/share-moments/values.json';
+
+const MEAN_TOLERANCE = 1e-12;
+const VARIANCE_TOLERANCE = 1e-10;
+
+function expectRelative(actual: number, expected: number, tolerance: number, what: string): void {
+  const off = expected === 0 ? Math.abs(actual) : Math.abs(actual / expected - 1);
+  expect(off, `${what}: ${actual} for ${expected}`).toBeLessThan(tolerance);
+}
+
+describe('moments of shares (mpmath at 60 digits, tests/reference/share-moments/make.py)', () => {
+  for (const { name, ...values } of reference.cases) {
+    const shape = Float64Array.from(values.shape);
+    const scale = Float64Array.from(values.scale);
+
+    it(`${name}: means and variances of single outcomes`, () => {
+      const { mean, variance } = columnMoments(shape, scale);
+      mean.forEach((m, k) => {
+        expectRelative(m, values.mean[k]!, MEAN_TOLERANCE, `mean ${k}`);
+        expectRelative(variance[k]!, values.covariance[k * shape.length + k]!, VARIANCE_TOLERANCE, `variance ${k}`);
+      });
+    });
+
+    it(`${name}: mean and variance of a sum of outcomes`, () => {
+      const { mean, variance } = shareMoments(shape, scale, values.chosen);
+      expectRelative(mean, values.chosenMean, MEAN_TOLERANCE, 'mean');
+      expectRelative(variance, values.chosenVariance, VARIANCE_TOLERANCE, 'variance');
+    });
+
+    it(`${name}: covariances between outcomes, relative to the standard deviations`, () => {
+      const n = shape.length;
+      const covariance = shareCovariances(shape, scale);
+      for (let k = 0; k < n; k++) {
+        for (let l = 0; l < n; l++) {
+          const unit = Math.sqrt(values.covariance[k * n + k]! * values.covariance[l * n + l]!) || 1;
+          const off = Math.abs(covariance[k * n + l]! - values.covariance[k * n + l]!) / unit;
+          expect(off, `covariance ${k}, ${l}`).toBeLessThan(VARIANCE_TOLERANCE);
+        }
+      }
+    });
+  }
+});
+
+describe('moments of shares, laws', () => {
+  const shape = Float64Array.of(0.5, 3, 10.25, 1);
+
+  it('equal scales give the closed moments of a Dirichlet, whatever the scale', () => {
+    const closed = columnMoments(shape, null);
+    for (const scale of [1e-9, 1, 7e12]) {
+      const { mean, variance } = columnMoments(shape, new Float64Array(4).fill(scale));
+      mean.forEach((m, k) => expectRelative(m, closed.mean[k]!, MEAN_TOLERANCE, `mean ${k}`));
+      variance.forEach((v, k) => expectRelative(v, closed.variance[k]!, VARIANCE_TOLERANCE, `variance ${k}`));
+    }
+  });
+
+  it('the Dirichlet form keeps the digits of an outcome that holds all but a part in 1e9', () => {
+    const { variance } = columnMoments(Float64Array.of(1e9, 0.5), null);
+    expectRelative(variance[0]!, variance[1]!, 1e-14, 'variance');
+  });
+
+  it('means sum to one, and each row of covariances to zero', () => {
+    const scale = Float64Array.of(1, 40, 0.3, 2);
+    const { mean } = columnMoments(shape, scale);
+    expectRelative(
+      mean.reduce((a, b) => a + b),
+      1,
+      MEAN_TOLERANCE,
+      'sum',
+    );
+    for (const theta of [scale, null]) {
+      const covariance = shareCovariances(shape, theta);
+      for (let k = 0; k < 4; k++) {
+        const row = covariance.subarray(4 * k, 4 * k + 4);
+        expect(Math.abs(row.reduce((a, b) => a + b)) / row[k]!).toBeLessThan(VARIANCE_TOLERANCE);
+      }
+    }
+  });
+
+  it('a sum of all outcomes is 1 with no variance, and a sum of none is 0', () => {
+    const scale = Float64Array.of(1, 40, 0.3, 2);
+    const all = shareMoments(shape, scale, [0, 1, 2, 3]);
+    expectRelative(all.mean, 1, MEAN_TOLERANCE, 'mean');
+    expect(all.variance).toBe(0);
+    expect(shareMoments(shape, scale, [])).toEqual({ mean: 0, variance: 0 });
+  });
+
+  it('a column whose every shape is zero has no moments', () => {
+    const none = new Float64Array(3);
+    expect(() => columnMoments(none, null)).toThrow(RangeError);
+    expect(() => shareMoments(none, Float64Array.of(1, 2, 3), [0])).toThrow(RangeError);
+  });
+
+  it('the mass of the rule is one and its deviations are the differences of shares', () => {
+    const rule = shareQuadrature(shape, Float64Array.of(1, 40, 0.3, 2));
+    expectRelative(
+      rule.mass.reduce((a, b) => a + b),
+      1,
+      1e-13,
+      'mass',
+    );
+    rule.nodes.forEach((t, i) => {
+      const share = (rule.shape[1]! * rule.scale[1]! * t) / (1 + rule.scale[1]! * t) / rule.total[i]!;
+      expect(Math.abs(share - rule.atCentre[1]! - deviation(rule, 1, i))).toBeLessThan(1e-13);
+    });
+  });
+
+  it('100 weighted columns of 103 outcomes take less than half a second', () => {
+    const wide = Float64Array.from({ length: 103 }, (_, k) => 0.5 + (k % 7) * 20);
+    const scale = Float64Array.from({ length: 103 }, (_, k) => 0.5 + (k % 5) / 3);
+    const start = performance.now();
+    for (let j = 0; j < 100; j++) columnMoments(wide, scale);
+    expect(performance.now() - start).toBeLessThan(500);
+  });
+});
