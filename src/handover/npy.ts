@@ -1,4 +1,4 @@
-import { closeSync, fstatSync, openSync, readSync } from 'node:fs';
+import { closeSync, fstatSync, openSync, readSync, statSync } from 'node:fs';
 import { open } from 'node:fs/promises';
 import { InputError } from '../study/input-error';
 
@@ -123,11 +123,13 @@ export function readNpy(path: string, where = path): NpyArray {
   }
 }
 
-/** Opens a file to read; a missing one is an `InputError` that names it. */
+/** Opens a regular file to read; a missing one, or what would block (a pipe), is an `InputError` that names it. */
 export function openForReading(path: string, where: string): number {
   try {
+    if (!statSync(path).isFile()) throw new InputError(where, 'not a file', 'name a bundle that is whole');
     return openSync(path, 'r');
   } catch (cause) {
+    if (cause instanceof InputError) throw cause;
     throw new InputError(where, `cannot be opened (${(cause as NodeJS.ErrnoException).code})`, 'build it again', {
       cause,
     });
