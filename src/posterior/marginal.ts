@@ -1,5 +1,5 @@
 import { columnOf, type Posterior } from './posterior';
-import { shareMoments } from './share-moments';
+import { columnMoments, complements, shareMoments } from './share-moments';
 
 /**
  * Marginal posterior of the probability of one outcome, or of the sum of several: a Beta distribution.
@@ -12,29 +12,42 @@ export interface Marginal {
   method: 'exact' | 'matched';
 }
 
-/** Marginal of the summed probability of `chosen` outcomes in column `j` (statistics.md 4). */
+/**
+ * Marginal of the summed probability of `chosen` outcomes in column `j` (statistics.md 4).
+ * Throws `RangeError` for a column without posterior.
+ */
 export function marginalOf(posterior: Posterior, j: number, chosen: readonly number[]): Marginal {
   const { shape, scale } = columnOf(posterior, j);
-  const total = shape.reduce((sum, a) => sum + a, 0);
-  if (total === 0) throw new RangeError(`column ${j} has no events and a prior of zero: it has no posterior`);
-  if (!scale) {
-    const a = chosen.reduce((sum, k) => sum + shape[k]!, 0);
-    const rest = shape.reduce((sum, value, k) => (chosen.includes(k) ? sum : sum + value), 0);
-    return { a, b: rest, method: 'exact' };
-  }
-  return matchedBeta(shareMoments(shape, scale, chosen));
+  if (scale) return matchedBeta(shareMoments(shape, scale, chosen));
+  const members = new Set(chosen);
+  let a = 0;
+  let b = 0;
+  shape.forEach((value, k) => (members.has(k) ? (a += value) : (b += value)));
+  if (a + b === 0) throw new RangeError(`column ${j} has no events and a prior of zero: it has no posterior`);
+  return { a, b, method: 'exact' };
+}
+
+/** Marginal of every single outcome of column `j`, as `marginalOf` of each but at the cost of one. */
+export function cellMarginals(posterior: Posterior, j: number): Marginal[] {
+  const { shape, scale } = columnOf(posterior, j);
+  const { mean, variance } = columnMoments(shape, scale);
+  if (scale) return [...mean].map((m, k) => matchedBeta({ mean: m, variance: variance[k]! }));
+  const rest = complements(shape);
+  return [...shape].map((a, k) => ({ a, b: rest[k]!, method: 'exact' }));
 }
 
 /** Mean and variance of a marginal. */
 export function momentsOf({ a, b }: Marginal): { mean: number; variance: number } {
   const total = a + b;
-  return { mean: a / total, variance: (a * b) / (total * total * (total + 1)) };
+  return { mean: a / total, variance: ((a / total) * (b / total)) / (total + 1) };
 }
 
-/** The Beta with a given mean and variance; a variance of 0 is certainty. */
-function matchedBeta({ mean, variance }: { mean: number; variance: number }): Marginal {
-  if (mean <= 0) return { a: 0, b: 1, method: 'matched' };
-  if (mean >= 1) return { a: 1, b: 0, method: 'matched' };
-  const total = (mean * (1 - mean)) / variance - 1;
+/** The Beta with a given mean and variance; a variance of 0 is certainty of the nearer end. */
+export function matchedBeta({ mean, variance }: { mean: number; variance: number }): Marginal {
+  if (mean <= 0 || mean >= 1 || variance === 0) {
+    return { a: mean < 0.5 ? 0 : 1, b: mean < 0.5 ? 1 : 0, method: 'matched' };
+  }
+  // A total below the rounding of this very quotient is that rounding: the variance is the largest a mean allows.
+  const total = Math.max((mean * (1 - mean)) / variance - 1, Number.EPSILON);
   return { a: mean * total, b: (1 - mean) * total, method: 'matched' };
 }

@@ -24,36 +24,60 @@ export interface Posterior {
 /**
  * Posterior of the columns of a tally (statistics.md 3). Unweighted: `shape = a0 + n`. Weighted: a cell with positive
  * weight has `shape = W^2/V + a0` and `scale = V/W`; another has its prior's shape at the column's mean weight scale
- * `V_j/W_j` (1 in a column without weight).
+ * `V_j/W_j` (1 in a column without weight). A column of equal weights is the unweighted one exactly.
  */
 export function posteriorOf(cells: Cells, prior: PriorCounts): Posterior {
   const { columns, outcomes } = prior;
-  const { events, weights, squares } = cells;
+  const shape = cells.events.map((n, i) => n + prior.counts[i]!);
+  const effective = effectiveEntries(cells, outcomes);
+  const { weights, squares } = cells;
   if (!weights || !squares) {
-    const shape = events.map((n, i) => n + prior.counts[i]!);
-    const effective = rowSums(events, outcomes);
     return { columns, outcomes, shape, scale: null, prior: prior.counts, effective, clamped: [] };
   }
-  const shape = new Float64Array(events.length);
-  const scale = new Float64Array(events.length);
+  const scale = new Float64Array(shape.length);
   const clamped: number[] = [];
   for (let j = 0; j < columns; j++) {
-    const meanScale = meanWeightScale(weights, squares, j * outcomes, outcomes);
-    for (let i = j * outcomes; i < (j + 1) * outcomes; i++) {
+    const [from, end] = [j * outcomes, (j + 1) * outcomes];
+    const meanScale = meanWeightScale(weights, squares, from, outcomes);
+    scale.fill(meanScale, from, end);
+    if (hasEqualWeights(cells.events, weights, squares, from, end, meanScale)) {
+      effective[j] = cells.events.subarray(from, end).reduce((sum, n) => sum + n, 0);
+      continue;
+    }
+    for (let i = from; i < end; i++) {
       const positive = weights[i]! > 0;
-      shape[i] = prior.counts[i]! + (positive ? weights[i]! ** 2 / squares[i]! : 0);
-      scale[i] = positive ? squares[i]! / weights[i]! : meanScale;
-      if (!positive && events[i]! > 0) clamped.push(i);
+      if (positive) scale[i] = squares[i]! / weights[i]!;
+      shape[i] = prior.counts[i]! + (positive ? weights[i]! / scale[i]! : 0);
+      if (!positive && cells.events[i]! > 0) clamped.push(i);
     }
   }
-  return { columns, outcomes, shape, scale, prior: prior.counts, effective: effectiveEntries(cells, outcomes), clamped };
+  return { columns, outcomes, shape, scale, prior: prior.counts, effective, clamped };
+}
+
+/** Sums of equal weights are rounded, each by a few units in the last place; weights that differ, differ by more. */
+const SUM_ROUNDING = 16 * Number.EPSILON;
+
+function hasEqualWeights(
+  events: Float64Array,
+  weights: Float64Array,
+  squares: Float64Array,
+  from: number,
+  end: number,
+  weight: number,
+): boolean {
+  for (let i = from; i < end; i++) {
+    const sum = events[i]! * weight;
+    const isSame = Math.abs(weights[i]! - sum) <= SUM_ROUNDING * sum;
+    if (!isSame || Math.abs(squares[i]! - sum * weight) > SUM_ROUNDING * sum * weight) return false;
+  }
+  return true;
 }
 
 /** `n_eff = W_j^2 / V_j` from column totals (Kish 1965); 0 for a column without events or without positive weight. */
 export function effectiveEntries(cells: Cells, outcomes: number): Float64Array {
   if (!cells.weights || !cells.squares) return rowSums(cells.events, outcomes);
   const squares = rowSums(cells.squares, outcomes);
-  return rowSums(cells.weights, outcomes).map((w, j) => (w > 0 && squares[j]! > 0 ? w ** 2 / squares[j]! : 0));
+  return rowSums(cells.weights, outcomes).map((w, j) => (w > 0 && squares[j]! > 0 ? w / (squares[j]! / w) : 0));
 }
 
 function meanWeightScale(weights: Float64Array, squares: Float64Array, from: number, length: number): number {

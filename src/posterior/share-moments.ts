@@ -137,14 +137,20 @@ function totalSpread(rule: ShareQuadrature): number {
 
 function dirichletMoments(shape: Float64Array): { mean: Float64Array; variance: Float64Array } {
   const total = shape.reduce((sum, a) => sum + a, 0);
-  // Summed for the largest alone: elsewhere `total - a` loses nothing.
-  const largest = shape.indexOf(Math.max(...shape));
-  const restOfLargest = shape.reduce((sum, a, k) => (k === largest ? sum : sum + a), 0);
-  const rest = shape.map((a, k) => (k === largest ? restOfLargest : total - a));
+  const rest = complements(shape);
   return {
     mean: shape.map((a) => a / total),
     variance: shape.map((a, k) => ((a / total) * (rest[k]! / total)) / (total + 1)),
   };
+}
+
+/** The summed shape of all other outcomes, for each outcome, without loss of digits. */
+export function complements(shape: Float64Array): Float64Array {
+  const total = shape.reduce((sum, a) => sum + a, 0);
+  // The difference loses digits where one outcome holds nearly all: that one alone is summed anew.
+  const largest = shape.indexOf(Math.max(...shape));
+  const others = shape.reduce((sum, a, k) => (k === largest ? sum : sum + a), 0);
+  return shape.map((a, k) => (k === largest ? others : total - a));
 }
 
 function requireShape(shape: Float64Array): void {
