@@ -1,0 +1,154 @@
+import { Command, CommanderError, InvalidArgumentError, Option } from 'commander';
+import { availableParallelism } from 'node:os';
+import { Cancelled, InputError } from '../src/study/input-error';
+import type { Surroundings } from './surroundings';
+import { VERSION } from './version';
+
+/** Exit statuses, part of what the command line promises. */
+const DONE = 0;
+const DOES_NOT_HOLD = 1;
+const BAD_INPUT = 2;
+const CANCELLED = 130;
+
+const READ_WORKER = new URL('./read-worker.js', import.meta.url);
+const DRAW_WORKER = new URL('./draw-worker.js', import.meta.url);
+
+const cancel = new AbortController();
+const surroundings: Surroundings = { readWorker: READ_WORKER, drawWorker: DRAW_WORKER, version: VERSION, signal: cancel.signal };
+
+function wholeNumber(least: number) {
+  return (text: string): number => {
+    const value = Number(text);
+    if (!/^\d+$/.test(text) || value < least) throw new InvalidArgumentError(`needs a whole number from ${least} up`);
+    return value;
+  };
+}
+
+const workersOption = (): Option =>
+  new Option('--workers <n>', 'worker threads; the result does not depend on it')
+    .argParser(wholeNumber(1))
+    .default(availableParallelism(), 'the processors of this machine');
+const jsonOption = (): Option => new Option('--json', 'one JSON document on standard output instead of text');
+
+const CAUTIONS_HELP = `
+The uncertainty given is the statistical uncertainty of the calibration only; systematic effects are yours to add.
+Not a certified dosimetry or safety instrument: local codes and licensed or accredited practice come first.
+
+Exit status: 0 done; 1 what was checked does not hold; 2 bad input or usage; 130 cancelled.`;
+
+function program(): Command {
+  const entasis = new Command('entasis')
+    .description('Response matrices from tagged events, with the uncertainty of every column, an audit, and an ensemble of replicas.')
+    .version(VERSION)
+    .addHelpText('after', CAUTIONS_HELP)
+    .helpCommand(false)
+    .showSuggestionAfterError(false);
+
+  entasis
+    .command('inspect')
+    .description('columns, types, rows, missing and non-finite values, ranges, and a starting study')
+    .argument('<file...>', 'event files (CSV, TSV, Parquet, NDJSON, ...; gzip and zstd too)')
+    .option('--study <path>', 'write the starting study there')
+    .addOption(jsonOption())
+    .action(async (files: string[], options) => {
+      const { inspect } = await import('./commands/inspect');
+      await inspect(files, options, surroundings);
+    });
+
+  entasis
+    .command('build')
+    .description('event files to bundle: tally, posterior, audit, ensemble')
+    .argument('<study>', 'study document (*.study.json)')
+    .option('--out <folder>', "the bundle; by default the study's name beside it")
+    .option('--from <part...>', 'build from tallied parts instead of the event files')
+    .addOption(workersOption())
+    .addOption(jsonOption())
+    .action(async (study: string, options) => {
+      const { build } = await import('./commands/build');
+      await build(study, options, surroundings);
+    });
+
+  entasis
+    .command('tally')
+    .description("tally some or all of a study's files into a part, for a batch system")
+    .argument('<study>', 'study document')
+    .requiredOption('--out <part>', 'folder of the part')
+    .option('--files <glob...>', "files to read instead of all the study's; relative to the study's folder")
+    .addOption(workersOption())
+    .addOption(jsonOption())
+    .action(async (study: string, options) => {
+      const { tally } = await import('./commands/tally');
+      await tally(study, options, surroundings);
+    });
+
+  entasis
+    .command('combine')
+    .description('join parts into one; the result does not depend on their order')
+    .argument('<part...>', 'parts that `entasis tally` has written')
+    .requiredOption('--out <part>', 'folder of the joined part')
+    .addOption(jsonOption())
+    .action(async (parts: string[], options) => {
+      const { combine } = await import('./commands/tally');
+      await combine(parts, options);
+    });
+
+  entasis
+    .command('verify')
+    .description('hashes, invariants, and replicas drawn again from seed and tally')
+    .argument('<bundle>', 'folder of a bundle')
+    .addOption(workersOption())
+    .addOption(jsonOption())
+    .action(async (bundle: string, options) => {
+      const { verify } = await import('./commands/verify');
+      if (!(await verify(bundle, options, surroundings))) process.exitCode = DOES_NOT_HOLD;
+    });
+  return entasis;
+}
+
+/** Commander throws instead of ending the process, and leaves the wording of errors to `fail`. */
+function quietly(command: Command): Command {
+  command.exitOverride().configureOutput({ writeErr: () => undefined });
+  command.commands.forEach(quietly);
+  return command;
+}
+
+function fail(error: unknown): number {
+  if (error instanceof CommanderError) {
+    if (error.exitCode === 0) return DONE;
+    const what = error.message.replace(/^error: /, '').replaceAll('\n', ' ');
+    const usage = error.code === 'commander.help' ? 'no command' : what;
+    return say(new InputError('usage', usage, 'see entasis --help'));
+  }
+  if (error instanceof Cancelled || cancel.signal.aborted) {
+    process.stderr.write('entasis: cancelled: nothing was written: start again when ready\n');
+    return CANCELLED;
+  }
+  if (error instanceof InputError) return say(error);
+  const { message, code } = error as NodeJS.ErrnoException;
+  if (process.env['ENTASIS_TRACE']) console.error(error);
+  return say(new InputError(code ?? 'unexpected fault', message, 'report it with the study, if you can; ENTASIS_TRACE=1 shows the trace'));
+}
+
+function say(error: InputError): number {
+  process.stderr.write(`entasis: ${error.message}\n`);
+  return BAD_INPUT;
+}
+
+let interrupts = 0;
+for (const signal of ['SIGINT', 'SIGTERM'] as const) {
+  process.on(signal, () => {
+    cancel.abort();
+    // A second Ctrl-C does not wait for an orderly end.
+    if (++interrupts > 1) process.exit(CANCELLED);
+  });
+}
+// A reader that stops listening (`entasis ... | head`) is no fault.
+process.stdout.on('error', (error: NodeJS.ErrnoException) => {
+  if (error.code !== 'EPIPE') throw error;
+});
+
+try {
+  await quietly(program()).parseAsync();
+} catch (error) {
+  process.exitCode = fail(error);
+}
