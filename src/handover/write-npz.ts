@@ -3,9 +3,10 @@ import { join } from 'node:path';
 import { Readable } from 'node:stream';
 import { pipeline } from 'node:stream/promises';
 import type { ZipFile } from 'yazl';
-import { resolveRange, type HandoverOptions, type ReplicaRange } from './handover-options';
+import type { HandoverOptions, ReplicaRange } from './handover-options';
 import { npyBytes, npyHeader, NPY_ITEM_BYTES } from './npy';
-import { replicaBlocks, type Bundle } from './open-bundle';
+import type { Bundle } from './open-bundle';
+import { rangeOut, replicasOut } from './replicas-out';
 import { writeWhole, type WrittenFile } from './whole-file';
 
 /** Every entry bears the same time, the first a zip knows, so that the same bundle gives the same bytes. */
@@ -16,7 +17,7 @@ const ENTRY = { mtime: new Date(1980, 0, 1), forceDosTimestamp: true, compress: 
  * `manifest.json` and `study.json`. `numpy.load` opens it; zip64 is used where an entry or the file needs it.
  */
 export async function writeNpz(bundle: Bundle, options: HandoverOptions): Promise<WrittenFile[]> {
-  const range = resolveRange(options.replicas, bundle.replicas, bundle.folder);
+  const range = rangeOut(bundle, options);
   const write = async ([path]: string[]): Promise<void> => {
     const { ZipFile } = await import('yazl');
     const zip = new ZipFile();
@@ -49,20 +50,12 @@ function* entriesOf(bundle: Bundle, range: ReplicaRange, options: HandoverOption
   const shape = [range.to - range.from, bundle.columns.length, bundle.outcomes.length];
   const header = npyHeader('<f8', shape);
   const size = header.length + shape.reduce((product, n) => product * n, NPY_ITEM_BYTES);
-  yield { name: 'replicas.npy', size, open: () => Readable.from(replicaBytes(header, bundle, range, options)) };
+  yield { name: 'replicas.npy', size, open: () => Readable.from(replicaBytes(header, bundle, options)) };
 }
 
-function* replicaBytes(
-  header: Buffer,
-  bundle: Bundle,
-  range: ReplicaRange,
-  options: HandoverOptions,
-): Generator<Buffer> {
+function* replicaBytes(header: Buffer, bundle: Bundle, options: HandoverOptions): Generator<Buffer> {
   yield header;
-  for (const { first, count, values } of replicaBlocks(bundle, range.from, range.to)) {
-    yield npyBytes('<f8', values);
-    options.onProgress?.(first + count - range.from, range.to - range.from);
-  }
+  for (const { values } of replicasOut(bundle, options)) yield npyBytes('<f8', values);
 }
 
 function addEntry(zip: ZipFile, entry: Entry, sources: Readable[]): void {
