@@ -1,0 +1,43 @@
+import type { CallName, Checked, Notice, Result } from '../bridge';
+import type { Chosen } from '../chosen';
+import type { Jobs } from '../jobs';
+import type { Keepsakes } from '../keepsakes';
+
+/** A function for each of some calls, with the checked argument in and the result out. */
+export type Handlers<Name extends CallName> = {
+  [N in Name]: (argument: Checked<N>) => Result<N> | Promise<Result<N>>;
+};
+
+/** Native dialogs and the frame of the window, where there is one: the desktop gives them. */
+export interface Desktop {
+  dialog(argument: Checked<'dialog'>): Promise<string[] | null>;
+  reveal(path: string): void;
+  setTitle(title: string, edited: boolean): void;
+}
+
+/** The built worker files; see `workersBeside` in `session.ts`. */
+export interface WorkerFiles {
+  read: URL;
+  draw: URL;
+  matrix: URL;
+  inspect: URL;
+}
+
+/** What the calls of one window share. */
+export interface Desk {
+  transport: 'desktop' | 'loopback';
+  version: string;
+  /** Folder that a new study's paths are relative to. */
+  folder: string;
+  demonstration: string | null;
+  open: string | null;
+  workerFiles: WorkerFiles;
+  /** Worker threads a job may use. */
+  workers: number;
+  chosen: Chosen;
+  jobs: Jobs;
+  keepsakes: Keepsakes;
+  desktop: Desktop | null;
+  now: () => number;
+  tell: (notice: Notice) => void;
+}
