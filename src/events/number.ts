@@ -4,93 +4,117 @@ const ZERO = 48;
 const PLUS = 43;
 const MINUS = 45;
 const DOT = 46;
+const EXPONENT = 101;
 
 /** Powers of ten that a double holds exactly (5^22 < 2^53 <= 5^23). */
 const EXACT_POWERS = Float64Array.from({ length: 23 }, (_, k) => Number(`1e${k}`));
 const LARGEST_EXACT_POWER = 22;
 /** Any integer of this many digits is below 2^53, so a double holds it exactly. */
 const EXACT_DIGITS = 15;
-/** Significant digits gathered in the first and in the second integer; both stay below 2^31. */
-const FIRST_DIGITS = 8;
-const SECOND_DIGITS = 9;
+/** Any integer of this many digits fits 32 bits. */
+const INTEGER_DIGITS = 9;
+/** Digits of a double printed in full, and most that the double-double path takes. */
+const FULL_DIGITS = 17;
 /** An exponent of more digits is left to `Number`: it is far outside the fast paths. */
 const MOST_EXPONENT_DIGITS = 4;
+
+/** Where `parseNumber` and others need a number itself: a double handed back by a function would be an object each. */
+const held = new Float64Array(1);
 
 /**
  * The double nearest to the decimal number in `bytes[from, to)` (ties to even, like `Number`), or `NaN` where the bytes
  * are no number; `isMissing` tells missing values from malformed ones. A number is an optional sign, digits with at
  * most one point among or around them, an optional exponent; or `inf` or `infinity` in any case, with an optional
  * sign. No blanks, no hexadecimal, no digit separators. Too large a number is an infinity, too small a one is zero.
+ */
+export function parseNumber(bytes: Uint8Array, from: number, to: number): number {
+  if (from < to && readDecimal(bytes, from, to, held, 0) === to) return held[0];
+  return parseInfinity(bytes, from, to);
+}
+
+/**
+ * Reads the decimal number that begins at `from` into `into[at]`; the place of the first byte behind it, `to` at the
+ * latest. Where none begins there that place is `from` and nothing is written.
  *
  * Numbers of at most 15 digits and a power of ten up to 22 take one correctly rounded operation on exact operands
  * (Clinger, "How to read floating point numbers accurately", PLDI 1990). Those of 16 and 17 digits, the usual output
  * of programs that print doubles in full, are divided in double-double arithmetic (Dekker, Numer. Math. 18 (1971)
  * 224); where its error bound could touch a rounding boundary, and for everything else, `Number` reads the text.
  */
-export function parseNumber(bytes: Uint8Array, from: number, to: number): number {
+export function readDecimal(bytes: Uint8Array, from: number, to: number, into: Float64Array, at: number): number {
   let p = from;
   const negative = bytes[p] === MINUS;
-  if (p < to && (negative || bytes[p] === PLUS)) p++;
-  let first = 0;
-  let second = 0;
-  let significant = 0;
-  let scale = 0;
-  let seen = 0;
-  let point = false;
-  for (; p < to; p++) {
-    const digit = bytes[p] - ZERO;
-    if (digit >= 0 && digit <= 9) {
-      seen++;
-      if (point) scale++;
-      if (significant > 0 || digit > 0) {
-        if (significant < FIRST_DIGITS) first = first * 10 + digit;
-        else if (significant < FIRST_DIGITS + SECOND_DIGITS) second = second * 10 + digit;
-        significant++;
-      }
-    } else if (bytes[p] === DOT && !point) point = true;
-    else break;
-  }
-  if (seen === 0) return parseInfinity(bytes, p, to, negative, point);
-  let exponent = -scale;
-  if (p < to) {
-    const written = parseExponent(bytes, p, to);
-    if (written !== written) return NaN;
-    exponent += written;
-  }
-  const size = magnitude(first, second, significant, exponent);
-  if (size !== size) return Number(textOf(bytes, from, to));
-  return negative ? -size : size;
-}
-
-/** `e`, a sign, digits up to `to`: the exponent; infinite where it is too long for the fast paths, `NaN` if malformed. */
-function parseExponent(bytes: Uint8Array, from: number, to: number): number {
-  if ((bytes[from] | 32) !== 101) return NaN;
-  let p = from + 1;
-  const negative = bytes[p] === MINUS;
-  if (p < to && (negative || bytes[p] === PLUS)) p++;
+  if (negative || bytes[p] === PLUS) p++;
   const begin = p;
-  let value = 0;
+  let whole = 0;
   for (; p < to; p++) {
-    const digit = bytes[p] - ZERO;
-    if (digit < 0 || digit > 9) return NaN;
-    if (p - begin < MOST_EXPONENT_DIGITS) value = value * 10 + digit;
+    const digit = (bytes[p] - ZERO) >>> 0;
+    if (digit > 9) break;
+    whole = (Math.imul(whole, 10) + digit) | 0;
   }
-  if (p === begin) return NaN;
-  if (p - begin > MOST_EXPONENT_DIGITS) value = Infinity;
-  return negative ? -value : value;
+  const wholeDigits = p - begin;
+  let scale = 0;
+  // The fraction in two integers: its first nine digits, and those behind.
+  let near = 0;
+  let far = 0;
+  if (p < to && bytes[p] === DOT) {
+    const first = ++p;
+    const turn = first + INTEGER_DIGITS;
+    for (; p < to; p++) {
+      const digit = (bytes[p] - ZERO) >>> 0;
+      if (digit > 9) break;
+      if (p < turn) near = (Math.imul(near, 10) + digit) | 0;
+      else far = (Math.imul(far, 10) + digit) | 0;
+    }
+    scale = p - first;
+  }
+  if (wholeDigits + scale === 0) return from;
+  let exponent = -scale;
+  if (p < to && (bytes[p] | 32) === EXPONENT) {
+    const end = readExponent(bytes, p, to);
+    if (end > p) exponent += exponentOf(bytes, p, end);
+    p = end;
+  }
+  const digits = whole === 0 ? scale : wholeDigits + scale;
+  if (
+    wholeDigits > INTEGER_DIGITS ||
+    digits > FULL_DIGITS ||
+    exponent > LARGEST_EXACT_POWER ||
+    exponent < -LARGEST_EXACT_POWER
+  ) {
+    into[at] = Number(textOf(bytes, from, p));
+    return p;
+  }
+  const later = scale > INTEGER_DIGITS ? scale - INTEGER_DIGITS : 0;
+  // Both products are exact: of 17 digits, whole * 5^scale and near * 5^later stay below 2^53.
+  const high = whole * EXACT_POWERS[scale];
+  const middle = near * EXACT_POWERS[later];
+  if (digits <= EXACT_DIGITS) {
+    const all = high + (middle + far);
+    const size = exponent < 0 ? all / EXACT_POWERS[-exponent] : all * EXACT_POWERS[exponent];
+    into[at] = negative ? -size : size;
+  } else if (exponent > 0 || !divide(high, middle, far, EXACT_POWERS[-exponent], negative, into, at)) {
+    into[at] = Number(textOf(bytes, from, p));
+  }
+  return p;
 }
 
-/** The number of `significant` digits times a power of ten, correctly rounded; `NaN` where no fast path is safe. */
-function magnitude(first: number, second: number, significant: number, exponent: number): number {
-  if (significant === 0) return 0;
-  if (exponent > LARGEST_EXACT_POWER || exponent < -LARGEST_EXACT_POWER) return NaN;
-  const later = significant > FIRST_DIGITS ? significant - FIRST_DIGITS : 0;
-  if (significant <= EXACT_DIGITS) {
-    const digits = first * EXACT_POWERS[later] + second;
-    return exponent < 0 ? digits / EXACT_POWERS[-exponent] : digits * EXACT_POWERS[exponent];
-  }
-  if (significant > FIRST_DIGITS + SECOND_DIGITS || exponent > 0) return NaN;
-  return divide(first * EXACT_POWERS[later], second, EXACT_POWERS[-exponent]);
+/** The end of the exponent (`e`, a sign, digits) that begins at `from`; `from` where there are no digits. */
+function readExponent(bytes: Uint8Array, from: number, to: number): number {
+  const begin = bytes[from + 1] === MINUS || bytes[from + 1] === PLUS ? from + 2 : from + 1;
+  let p = begin;
+  while (p < to && (bytes[p] - ZERO) >>> 0 <= 9) p++;
+  return p > begin ? p : from;
+}
+
+/** The value of the exponent in `bytes[from, to)`, infinite where it is too long for the fast paths. */
+function exponentOf(bytes: Uint8Array, from: number, to: number): number {
+  let value = 0;
+  let p = from + 1;
+  if (bytes[p] === MINUS || bytes[p] === PLUS) p++;
+  if (to - p > MOST_EXPONENT_DIGITS) return Infinity;
+  for (; p < to; p++) value = value * 10 + bytes[p] - ZERO;
+  return bytes[from + 1] === MINUS ? -value : value;
 }
 
 /** 2^27 + 1 splits a double into two halves of 26 bits (Dekker 1971, with Veltkamp's constant). */
@@ -101,17 +125,31 @@ const SPLITTER = 134217729;
  */
 const QUOTIENT_ERROR = 2 ** -49;
 
-/** `(high + low) / by` correctly rounded for exact, positive operands, `by` below 2^75; `NaN` where it is too close to call. */
-function divide(high: number, low: number, by: number): number {
-  const sum = high + low;
-  const rest = low - (sum - high);
+/**
+ * Writes `(high + middle + far) / by`, correctly rounded, for integers of which `high` and `middle` are exact, `far` is
+ * below 2^30 and `by` below 2^75; false where the result is too close to a rounding boundary to call.
+ */
+function divide(
+  high: number,
+  middle: number,
+  far: number,
+  by: number,
+  negative: boolean,
+  into: Float64Array,
+  at: number,
+): boolean {
+  const upper = high + middle;
+  const lost = high > middle ? middle - (upper - high) : high - (upper - middle);
+  const sum = upper + (lost + far);
+  const rest = lost + far - (sum - upper);
   const quotient = sum / by;
   const product = quotient * by;
   const second = (sum - product - productError(quotient, by, product) + rest) / by;
   const rounded = quotient + second;
   const left = second - (rounded - quotient);
   const bound = Math.abs(second) * QUOTIENT_ERROR;
-  return rounded + (left + bound) === rounded && rounded + (left - bound) === rounded ? rounded : NaN;
+  into[at] = negative ? -rounded : rounded;
+  return rounded + (left + bound) === rounded && rounded + (left - bound) === rounded;
 }
 
 /** `a * b - product`, exactly, for `product` the rounded `a * b` (Dekker's product). */
@@ -125,8 +163,10 @@ function productError(a: number, b: number, product: number): number {
   return aHigh * bHigh - product + aHigh * bLow + aLow * bHigh + aLow * bLow;
 }
 
-function parseInfinity(bytes: Uint8Array, from: number, to: number, negative: boolean, point: boolean): number {
-  if (point || !(spells(bytes, from, to, INF) || spells(bytes, from, to, INFINITY))) return NaN;
+function parseInfinity(bytes: Uint8Array, from: number, to: number): number {
+  const negative = bytes[from] === MINUS;
+  const word = from < to && (negative || bytes[from] === PLUS) ? from + 1 : from;
+  if (!spells(bytes, word, to, INF) && !spells(bytes, word, to, INFINITY)) return NaN;
   return negative ? -Infinity : Infinity;
 }
 

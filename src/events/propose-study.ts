@@ -96,15 +96,28 @@ function proposeRoles(columns: ColumnFacts[], where: string) {
   };
   const named = 'its name';
   const weight = take('weight', byName('weight', isNumber), named);
-  const run = take('run', byName('run', () => true), named);
-  const event = take('event', byName('event', () => true), named);
-  const truth = take('true', byName('true', isAxis), named) ?? take('true', free().find(isAxis), 'the first column left');
+  const run = take(
+    'run',
+    byName('run', () => true),
+    named,
+  );
+  const event = take(
+    'event',
+    byName('event', () => true),
+    named,
+  );
+  const truth =
+    take('true', byName('true', isAxis), named) ?? take('true', free().find(isAxis), 'the first column left');
   const reco =
     take('reconstructed', byName('reconstructed', isAxis), named) ??
     take('reconstructed', free().find(isAxis), 'the first column left');
   if (truth === undefined || reco === undefined) {
     const known = columns.map(({ name }) => name).join(', ') || 'none';
-    throw new InputError(where, `no two columns for true and reconstructed values (columns: ${known})`, 'check the delimiter and the header');
+    throw new InputError(
+      where,
+      `no two columns for true and reconstructed values (columns: ${known})`,
+      'check the delimiter and the header',
+    );
   }
   const roles: StudyInput['roles'] = { true: truth, reconstructed: reco };
   if (weight !== undefined) roles.weight = weight;
@@ -146,7 +159,25 @@ export function roundRange(least: number, greatest: number, bins: number): { fro
   return { from: tidy(first * step), to: tidy(last * step), count: last - first };
 }
 
-const UNITS = ['eV', 'keV', 'MeV', 'GeV', 'TeV', 'ps', 'ns', 'us', 'ms', 'mm', 'cm', 'm', 'deg', 'rad', 'mrad', 'K', 'Hz'];
+const UNITS = [
+  'eV',
+  'keV',
+  'MeV',
+  'GeV',
+  'TeV',
+  'ps',
+  'ns',
+  'us',
+  'ms',
+  'mm',
+  'cm',
+  'm',
+  'deg',
+  'rad',
+  'mrad',
+  'K',
+  'Hz',
+];
 
 /** The unit that a column's name ends in (`e_tag_MeV`), else none. */
 function unitIn(name: string): string {

@@ -1,0 +1,184 @@
+import type { Need } from './batch';
+import type { BatchBuilder } from './batch-builder';
+import { decode } from './dictionary';
+import { Fields, trimmedEnd } from './fields';
+import { identify } from './identity';
+import { LONGEST_LINE } from './lines';
+import { isMissing, parseNumber, readDecimal } from './number';
+
+/** Where the columns of a delimited table stand: plain data, found once when the file is planned. */
+export interface Layout {
+  delimiter: number;
+  /** Names of all columns, in order. */
+  header: string[];
+  /** Physical lines up to and with the header. */
+  headerLines: number;
+  /** The field of each need. */
+  positions: number[];
+}
+
+const LINE_FEED = 10;
+const RETURN = 13;
+const SPACE = 32;
+const QUOTE = 34;
+
+const SKIPPED = 0;
+const NUMBER = 1;
+const OTHER = 2;
+
+/**
+ * Turns lines of a delimited table into rows of a batch. Two ways through a line: the quick one reads each byte once and
+ * gives up at anything unusual; the careful one then reads that line again, and alone decides what is rejected and why.
+ */
+export class RowParser {
+  /** Physical lines passed. */
+  place = 0;
+  private readonly kinds: Uint8Array;
+  private readonly needsOf: number[][];
+  private readonly stops = new Uint8Array(256);
+  private readonly fields = new Fields();
+
+  /** The first `linesToSkip` lines are passed over. */
+  constructor(
+    private readonly layout: Layout,
+    private readonly needs: readonly Need[],
+    private readonly builder: BatchBuilder,
+    private linesToSkip: number,
+  ) {
+    const { header, positions, delimiter } = layout;
+    this.needsOf = header.map((_, field) => needs.flatMap((_need, i) => (positions[i] === field ? [i] : [])));
+    this.kinds = Uint8Array.from(this.needsOf, (list) => {
+      if (list.length === 0) return SKIPPED;
+      return list.length === 1 && needs[list[0]].as === 'number' ? NUMBER : OTHER;
+    });
+    for (const stop of [delimiter, LINE_FEED, RETURN, QUOTE]) this.stops[stop] = 1;
+  }
+
+  /** Parses whole lines of `bytes[from, to)` until the builder is full; where it stopped. */
+  parse(bytes: Uint8Array, from: number, to: number): number {
+    let line = from;
+    while (line < to && !this.builder.full) {
+      if (this.linesToSkip > 0) {
+        this.linesToSkip--;
+        this.place++;
+        line = bytes.indexOf(LINE_FEED, line) + 1;
+        continue;
+      }
+      line = this.quickly(bytes, line, to);
+      if (line < to && !this.builder.full) line = this.carefully(bytes, line);
+    }
+    return line;
+  }
+
+  /**
+   * Parses lines as long as nothing about them is unusual; the begin of the first line not parsed. Every loop below ends
+   * at a line feed at the latest, which stands at `to - 1`.
+   */
+  private quickly(bytes: Uint8Array, from: number, to: number): number {
+    const { kinds, needsOf, stops, builder } = this;
+    const { numbers, places, capacity } = builder;
+    const { delimiter } = this.layout;
+    const last = kinds.length - 1;
+    let { rows } = builder;
+    let { place } = this;
+    let line = from;
+    lines: while (line < to && rows < capacity) {
+      let p = line;
+      for (let field = 0; ; field++) {
+        if (kinds[field] === SKIPPED) {
+          while (stops[bytes[p]] === 0) p++;
+        } else if (kinds[field] === NUMBER) {
+          while (bytes[p] === SPACE) p++;
+          const begin = p;
+          p = readDecimal(bytes, p, to, numbers[needsOf[field][0]], rows);
+          if (p === begin || stops[bytes[p]] === 0) {
+            while (stops[bytes[p]] === 0) p++;
+            const end = trimmedEnd(bytes, begin, p);
+            const value = parseNumber(bytes, begin, end);
+            if (value !== value && !isMissing(bytes, begin, end)) break lines;
+            numbers[needsOf[field][0]][rows] = value;
+          }
+        } else {
+          while (bytes[p] === SPACE) p++;
+          const begin = p;
+          while (stops[bytes[p]] === 0) p++;
+          if (!this.fill(needsOf[field], bytes, begin, trimmedEnd(bytes, begin, p), rows)) break lines;
+        }
+        if (field === last) break;
+        if (bytes[p] !== delimiter) break lines;
+        p++;
+      }
+      // A line of a one-column table that ends in a blank may be blank altogether.
+      if (last === 0 && bytes[p - 1] <= SPACE) break;
+      if (p - line > LONGEST_LINE) break;
+      if (bytes[p] === RETURN) p++;
+      if (bytes[p] !== LINE_FEED) break;
+      line = p + 1;
+      places[rows++] = ++place;
+    }
+    builder.rows = rows;
+    this.place = place;
+    return line;
+  }
+
+  /** Writes one field for each of its needs; false where a number was wanted and there is none. */
+  private fill(needs: number[], bytes: Uint8Array, from: number, to: number, row: number): boolean {
+    const { numbers, codes, high, low, dictionaries } = this.builder;
+    for (const i of needs) {
+      const { as } = this.needs[i];
+      if (as === 'text') codes[i][row] = dictionaries[i].code(bytes, from, to);
+      else if (as === 'identity') identify(bytes, from, to, high[i], low[i], row);
+      else {
+        const value = parseNumber(bytes, from, to);
+        if (value !== value && !isMissing(bytes, from, to)) return false;
+        numbers[i][row] = value;
+      }
+    }
+    return true;
+  }
+
+  /** Parses the one line that begins at `from`: a row, a reject, or nothing where it is blank. Where the next begins. */
+  private carefully(bytes: Uint8Array, from: number): number {
+    const feed = bytes.indexOf(LINE_FEED, from);
+    const to = feed > from && bytes[feed - 1] === RETURN ? feed - 1 : feed;
+    const place = ++this.place;
+    const { builder } = this;
+    if (to - from > LONGEST_LINE) {
+      builder.reject(place, null, `more than ${LONGEST_LINE} bytes`, 'line too long');
+      return feed + 1;
+    }
+    const { header, delimiter } = this.layout;
+    const found = this.fields.cut(bytes, from, to, delimiter);
+    if (isBlank(this.fields, found)) return feed + 1;
+    if (found < 0) {
+      builder.reject(place, header[-1 - found] ?? null, excerpt(bytes, from, to), 'quote not closed');
+    } else if (found !== header.length) {
+      const reason = found < header.length ? 'too few fields' : 'too many fields';
+      builder.reject(place, null, `${found} found, ${header.length} expected`, reason);
+    } else this.finishRow(bytes, place);
+    return feed + 1;
+  }
+
+  private finishRow(bytes: Uint8Array, place: number): void {
+    const { fields, builder, needsOf } = this;
+    for (let field = 0; field < needsOf.length; field++) {
+      const from = fields.starts[field];
+      const to = fields.ends[field];
+      if (needsOf[field].length > 0 && !this.fill(needsOf[field], bytes, from, to, builder.rows)) {
+        builder.reject(place, this.layout.header[field], excerpt(bytes, from, to), 'not a number');
+        return;
+      }
+    }
+    builder.places[builder.rows++] = place;
+  }
+}
+
+function isBlank(fields: Fields, found: number): boolean {
+  return found === 1 && fields.starts[0] === fields.ends[0];
+}
+
+const LONGEST_EXCERPT = 100;
+
+function excerpt(bytes: Uint8Array, from: number, to: number): string {
+  return decode(bytes.subarray(from, Math.min(to, from + LONGEST_EXCERPT)));
+}
