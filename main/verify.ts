@@ -219,10 +219,10 @@ async function checkReplicas(
 ): Promise<Check> {
   const path = join(bundle, REPLICAS);
   const file = openForReading(path, path);
-  const { dataStart } = readNpyHeader(file, path);
+  const { start } = readNpyHeader(file, path);
   closeSync(file);
   const { seed, replicas } = manifest;
-  const mismatch = await checkEnsemble({ ...options, parameters, seed, replicas, path, place: path }, dataStart);
+  const mismatch = await checkEnsemble({ ...options, parameters, seed, replicas, path, place: path }, start);
   const what = 'every replica is what seed and tally give, to the bit';
   if (!mismatch) return { what, holds: true, detail: `${replicas} replicas drawn again` };
   const { replica, column, outcome, found, expected } = mismatch;
