@@ -8,7 +8,7 @@ import { NPY_ITEM_BYTES, openForReading, readNpy, readNpyHeader, readNpyPart } f
 import type { NpyArray, NpyHeader } from './npy';
 import { MANIFEST } from './write-bundle';
 
-/** Whole replicas, `[count, columns, outcomes]`, the first of them replica number `first`. */
+/** Whole replicas (or other slabs of an array), `[count, columns, outcomes]`, the first of them number `first`. */
 export interface ReplicaBlock {
   first: number;
   count: number;
@@ -82,13 +82,18 @@ export function readCells(bundle: Bundle, name: string): Float64Array {
 }
 
 /** Replicas `[from, to)` in blocks of bounded size. Each block's array is new and the caller's to keep. */
-export function* replicaBlocks(bundle: Bundle, from = 0, to = bundle.replicas): Generator<ReplicaBlock> {
-  const cells = bundle.columns.length * bundle.outcomes.length;
-  const path = arrayPath(bundle.folder, 'replicas');
-  const each = Math.max(1, Math.floor(BLOCK_BYTES / (cells * NPY_ITEM_BYTES)));
+export function replicaBlocks(bundle: Bundle, from = 0, to = bundle.replicas): Generator<ReplicaBlock> {
+  return arrayBlocks(bundle, 'replicas', from, to);
+}
+
+/** An array in blocks of bounded size along its first axis, as `replicaBlocks` gives the replicas. */
+export function* arrayBlocks(bundle: Bundle, name: string, from: number, to: number): Generator<ReplicaBlock> {
+  const path = arrayPath(bundle.folder, name);
   const fd = openForReading(path, path);
   try {
     const header = readNpyHeader(fd, path);
+    const cells = header.shape.slice(1).reduce((product, n) => product * n, 1);
+    const each = Math.max(1, Math.floor(BLOCK_BYTES / (cells * NPY_ITEM_BYTES)));
     for (let first = from; first < to; first += each) {
       const count = Math.min(each, to - first);
       const values = readNpyPart(fd, header, first * cells, (first + count) * cells, path);

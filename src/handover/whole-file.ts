@@ -1,6 +1,6 @@
 import { createHash, randomUUID } from 'node:crypto';
 import { createReadStream } from 'node:fs';
-import { rename, rm, stat } from 'node:fs/promises';
+import { rename, rm, stat, writeFile } from 'node:fs/promises';
 import { basename, dirname, join } from 'node:path';
 import { InputError, stopIfCancelled } from '../study/input-error';
 
@@ -23,6 +23,8 @@ export async function writeWhole(
   stopIfCancelled(signal);
   const temporaries = places.map(temporaryName);
   try {
+    // The place is tried before anything is computed, and by the same words for every format.
+    for (const path of temporaries) await writeFile(path, '', { flag: 'wx' });
     await write(temporaries);
     const files: WrittenFile[] = [];
     for (const [i, path] of places.entries()) files.push({ path, ...(await weigh(temporaries[i]!, signal)) });
@@ -52,17 +54,21 @@ function temporaryName(place: string): string {
   return join(dirname(place), `.${randomUUID().slice(0, 8)}-${basename(place)}`);
 }
 
-/** Faults of the place itself (full, forbidden, absent) are the user's to mend; anything else passes. */
+/** Faults of the place itself are the user's to mend; anything else passes. */
 function placeFault(error: unknown, place: string): unknown {
-  const faults: Record<string, string> = {
-    ENOENT: 'the folder does not exist',
-    EACCES: 'writing there is not allowed',
-    EPERM: 'writing there is not allowed',
-    EROFS: 'the disk is read-only',
-    ENOSPC: 'the disk is full',
-    EISDIR: 'a folder stands there',
-    ENOTDIR: 'a part of the path is no folder',
-  };
-  const fault = faults[(error as NodeJS.ErrnoException).code ?? ''];
-  return fault ? new InputError(place, fault, 'name another place', { cause: error }) : error;
+  if (error instanceof InputError) return error;
+  const { code, message } = error as NodeJS.ErrnoException;
+  const fault = PLACE_FAULTS.find(([name, text]) => name === code || (text && message?.includes(text)));
+  return fault ? new InputError(place, fault[2], 'name another place', { cause: error }) : error;
 }
+
+/** Code, the words by which a library that has no code tells it, and ours. */
+const PLACE_FAULTS: [code: string, words: string, ours: string][] = [
+  ['ENOSPC', 'No space left on device', 'the disk is full'],
+  ['ENOENT', '', 'the folder does not exist'],
+  ['EACCES', '', 'writing there is not allowed'],
+  ['EPERM', '', 'writing there is not allowed'],
+  ['EROFS', '', 'the disk is read-only'],
+  ['EISDIR', '', 'a folder stands there'],
+  ['ENOTDIR', '', 'a part of the path is no folder'],
+];

@@ -13,6 +13,7 @@ export interface BundleWishes {
   folder?: string;
   replicas?: number;
   weighted?: boolean;
+  runs?: number;
   axes?: StudyInput['axes'];
   lost?: 'missing' | 'unrecorded';
 }
@@ -63,10 +64,20 @@ export async function makeBundle(wishes: BundleWishes = {}): Promise<string> {
     arrays.push(['tally/squares', '<f8', shape, counts.map((n) => n * 0.5)]);
     arrays.push(['posterior/scale', '<f8', shape, counts.map((_, i) => 0.5 + (i % 3))]);
   }
+  const labels = wishes.runs ? Array.from({ length: wishes.runs }, (_, i) => `run ${i}`) : null;
+  if (labels) {
+    const runs = Float64Array.from({ length: labels.length * size }, (_, i) => i % 89);
+    arrays.push(['tally/runs', '<i8', [labels.length, ...shape], runs]);
+  }
   const layouts: Manifest['arrays'] = {};
   const files: Manifest['files'] = {};
   for (const [name, type, of, values] of arrays) {
-    layouts[`${name}.npy`] = { type, shape: of, axes: ['replica', 'column', 'outcome'].slice(-of.length), holds: '' };
+    layouts[`${name}.npy`] = {
+      type,
+      shape: of,
+      axes: [name === 'replicas' ? 'replica' : 'run', 'column', 'outcome'].slice(-of.length),
+      holds: '',
+    };
     const path = join(folder, `${name}.npy`);
     mkdirSync(dirname(path), { recursive: true });
     await writeNpy(path, type, of, values);
@@ -86,7 +97,7 @@ export async function makeBundle(wishes: BundleWishes = {}): Promise<string> {
     blockSize: 32,
     columns,
     outcomes,
-    runs: null,
+    runs: labels,
     weighted: wishes.weighted ?? false,
     lostRecorded: study.lost === 'missing',
     credibility: study.credibility,
