@@ -11,10 +11,13 @@ export interface CampaignCells {
   squares?: number[][];
   /** `[columns][2][outcomes]` events; by default everything stands in the first half. */
   halves?: number[][][];
+  halvesWeights?: number[][][];
+  halvesSquares?: number[][][];
   /** `[runs][columns][outcomes]` events. */
   runs?: number[][][];
   runWeights?: number[][][];
   runSquares?: number[][][];
+  trueRange?: { least: number; greatest: number } | null;
 }
 
 /** A tally made by hand. */
@@ -28,8 +31,8 @@ export function tallyOf(cells: CampaignCells): Tally {
   const squares = flat(cells.squares);
   const halves: Cells = {
     events: flat3(cells.halves ?? inFirstHalf(cells.events))!,
-    weights: flat3(inFirstHalf(cells.weights)),
-    squares: flat3(inFirstHalf(cells.squares)),
+    weights: flat3(cells.halvesWeights ?? inFirstHalf(cells.weights)),
+    squares: flat3(cells.halvesSquares ?? inFirstHalf(cells.squares)),
   };
   const runs = cells.runs && {
     labels: cells.runs.map((_, r) => `run ${r + 1}`),
@@ -44,6 +47,7 @@ export function tallyOf(cells: CampaignCells): Tally {
     runs: runs ?? null,
     largestSquare: weighted ? new Float64Array(cells.columnNames.length) : null,
     unmatched: null,
+    trueRange: cells.trueRange ?? null,
     ledger: emptyLedger(),
     duplicates: null,
   };
@@ -53,4 +57,9 @@ export function tallyOf(cells: CampaignCells): Tally {
 export function namesOf(bins: number, lost = false): string[] {
   const inside = Array.from({ length: bins }, (_, i) => `b${i + 1}`);
   return ['below', ...inside, 'above', ...(lost ? ['lost'] : [])];
+}
+
+/** `[columns][outcomes]` totals of `[columns][2][outcomes]` halves, or of anything with the places to sum in the middle. */
+export function overHalves(halves: number[][][]): number[][] {
+  return halves.map(([lower, upper]) => lower!.map((n, k) => n + upper![k]!));
 }
