@@ -68,6 +68,9 @@ export interface Unit {
   detail: unknown;
 }
 
+/** Most labels of a text column that `inspect` lists. */
+export const MOST_LABELS = 1000;
+
 export interface ColumnFacts {
   name: string;
   type: 'number' | 'text';
@@ -85,6 +88,7 @@ export interface FileFacts {
   path: string;
   format: string;
   bytes: number;
+  /** Rows that could be read; `rejected` counts the others. */
   rows: number;
   rejected: number;
   columns: ColumnFacts[];
@@ -101,4 +105,6 @@ export interface Reader {
   plan(path: string, name: string, needs: readonly Need[], pieces: number): Promise<Unit[]>;
   /** Reads one unit. Throws `InputError` with the place of the damage where the file is damaged. */
   read(unit: Unit, needs: readonly Need[], signal?: AbortSignal): AsyncGenerator<Batch>;
+  /** Looks at every value of a format whose columns have no types of their own; elsewhere `inspectFile` reads by types. */
+  inspect?(path: string, signal?: AbortSignal): Promise<FileFacts>;
 }

@@ -3,6 +3,7 @@ import { InputError, stopIfCancelled } from '../study/input-error';
 import type { Batch, Need, Reader, Unit } from './batch';
 import { BatchBuilder } from './batch-builder';
 import { sizeOf } from './byte-source';
+import { inspectTable } from './inspect-table';
 import { LineBlocks, lineStart } from './lines';
 import { parseNumber } from './number';
 import { compressionOf, openBytes, type Compression } from './open-bytes';
@@ -43,6 +44,8 @@ export const csv: Reader = {
   },
 
   read: readUnit,
+
+  inspect: inspectTable,
 };
 
 async function* readUnit(unit: Unit, needs: readonly Need[], signal?: AbortSignal): AsyncGenerator<Batch> {
