@@ -41,8 +41,9 @@ export function eventsToSettle(
   const mean = marginal.a / (marginal.a + marginal.b);
   const isBeyond = side === 'above' ? mean > limit : mean < limit;
   const as = isBeyond ? 'flagged' : 'clear';
+  const unlucky = isBeyond === (side === 'above') ? -1 : 1;
   const settles = (events: number): boolean => {
-    const later = grown(marginal, events * growth, mean < limit ? 1 : -1);
+    const later = grown(marginal, events * growth, unlucky);
     return answer(probabilityBeyond(later, limit, side), credibility) === as;
   };
   const events = leastThat(settles);

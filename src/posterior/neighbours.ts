@@ -19,8 +19,8 @@ export interface NeighbourPrior {
 
 /** Part of the prior's mean that is even over the outcomes, so that none is taken to be impossible. */
 const EVEN_PART = 0.05;
-/** The strengths tried: a tenth of an event to a million, twenty a decade. An end is taken where the curve still rises. */
-const DECADES = { from: -1, to: 6, steps: 20 };
+/** The strengths tried: a tenth of an event to a million, eight a decade. An end is taken where the curve still rises. */
+const DECADES = { from: -1, to: 6, steps: 8 };
 /** Pseudo-count of a column that no neighbour informs. */
 const JEFFREYS = 0.5;
 

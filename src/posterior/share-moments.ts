@@ -1,4 +1,4 @@
-import { deviation, shareQuadrature, type ShareQuadrature } from './share-quadrature';
+import { shareQuadrature, type ShareQuadrature } from './share-quadrature';
 
 /**
  * Exact mean and variance of the summed share of `chosen` outcomes among normalised independent gammas
@@ -85,18 +85,19 @@ interface Sums {
 }
 
 function sumsOf(rule: ShareQuadrature, members: readonly number[]): Sums {
-  const { nodes, mass, total } = rule;
+  const { nodes, mass, total, centre, meanStep, stretch } = rule;
   const steps = new Float64Array(nodes.length);
   let mean = 0;
   let spread = 0;
   for (const k of members) {
-    const a = rule.shape[k]!;
-    const s = rule.scale[k]!;
+    const [a, s, share] = [rule.shape[k]!, rule.scale[k]!, rule.atCentre[k]!];
     for (let i = 0; i < nodes.length; i++) {
-      const part = (s * nodes[i]!) / (1 + s * nodes[i]!);
-      steps[i]! += deviation(rule, k, i);
-      mean += (mass[i]! * a * part) / total[i]!;
-      spread += (mass[i]! * a * part * part) / total[i]!;
+      const inverse = 1 / (1 + s * nodes[i]!);
+      const part = s * nodes[i]! * inverse;
+      const weight = ((mass[i]! * a) / total[i]!) * part;
+      mean += weight;
+      spread += weight * part;
+      steps[i]! += share * (meanStep[i]! - s * (nodes[i]! - centre) * inverse) * stretch[i]!;
     }
   }
   let middle = 0;

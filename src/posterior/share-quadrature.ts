@@ -17,11 +17,16 @@ export interface ShareQuadrature {
   mass: Float64Array;
   /** `g` at each node. */
   total: Float64Array;
-  /** The node near the middle of the mass, about which differences are taken; see `deviation`. */
+  /**
+   * The node near the middle of the mass, about which differences are taken:
+   * `rho_k(t) - rho_k(centre) = atCentre_k (meanStep - e_k) stretch`, `e_k = scale_k (t - centre) / (1 + scale_k t)`.
+   * That form is free of cancellation: for large shapes `rho_k` moves by parts in the total shape only, and those parts
+   * are what a variance is made of.
+   */
   centre: number;
   /** `rho_k(centre)`. */
   atCentre: Float64Array;
-  /** Per node: the mean over `atCentre` of `e_k = scale_k (t - centre) / (1 + scale_k t)`, and `1 / (1 - that mean)`. */
+  /** Per node: the mean of `e_k` over `atCentre`, and `1 / (1 - that mean)`. */
   meanStep: Float64Array;
   stretch: Float64Array;
 }
@@ -66,15 +71,6 @@ export function shareQuadrature(shape: Float64Array, scale: Float64Array): Share
     [from, to] = [to, to * PANEL_RATIO];
   }
   return centred(shape, relative, Float64Array.from(nodes), Float64Array.from(mass), Float64Array.from(total), centre);
-}
-
-/**
- * `rho_k(t) - rho_k(centre)` at node `i`, free of cancellation: for large shapes `rho_k` moves by parts in the total
- * shape only, and those parts are what a variance is made of.
- */
-export function deviation(rule: ShareQuadrature, k: number, i: number): number {
-  const step = (rule.scale[k]! * (rule.nodes[i]! - rule.centre)) / (1 + rule.scale[k]! * rule.nodes[i]!);
-  return rule.atCentre[k]! * (rule.meanStep[i]! - step) * rule.stretch[i]!;
 }
 
 function relativeScales(shape: Float64Array, scale: Float64Array): { relative: Float64Array; smallest: number } {
