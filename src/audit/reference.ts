@@ -19,18 +19,14 @@ export interface ReferenceSpectrum {
 export interface ReferenceSources {
   /** Text of a table file as the study names it; needed for the kind `table` alone. */
   readTable?: (file: string) => string;
-  /**
-   * Least and greatest true value among the tallied events. They widen the default range beyond the true axis, so that
-   * `below` and `above` get content; without them these columns get none unless the study states a range.
-   */
-  observed?: { least: number; greatest: number } | undefined;
   /** Names the study in errors. */
   where?: string;
 }
 
 /**
  * The reference spectrum of a study, binned on its true axis by closed-form integrals (tables by area).
- * Range: `from` and `to` of the study; by default the table's own, or the axis widened by the observed values.
+ * Range: `from` and `to` of the study; by default the table's own, or the axis widened by the true values
+ * tallied, so that `below` and `above` get content.
  * `flat` is flat in the true value itself, on a log axis too; on a tag axis it is equal content for every tag.
  * Throws `InputError` for a kind that a tag axis cannot have, a power law that begins at or below 0, a range that
  * misses the axis, and a faulty table.
@@ -44,7 +40,7 @@ export function referenceOf(
   if (reference.kind === 'calibration') return calibrationSpectrum(reference, tally);
   const where = sources.where ?? 'study';
   if (trueAxis.kind === 'tags') return flatTags(reference, trueAxis.tags.length, where);
-  const shape = shapeOfReference(reference, trueAxis, sources, where);
+  const shape = shapeOfReference(reference, trueAxis, tally, sources, where);
   return binned(shape, trueAxis, reference.events);
 }
 
@@ -96,11 +92,12 @@ function flatTags(reference: Reference, tags: number, where: string): ReferenceS
 function shapeOfReference(
   reference: Reference,
   axis: NumericAxis,
+  tally: Tally,
   sources: ReferenceSources,
   where: string,
 ): SpectrumShape {
   const table = reference.kind === 'table' ? tableOf(reference.file!, sources) : null;
-  const { from, to } = rangeOf(reference, axis, table, sources.observed, where);
+  const { from, to } = rangeOf(reference, axis, table, tally.trueRange, where);
   const within = { from, to };
   switch (reference.kind) {
     case 'powerLaw':
@@ -134,7 +131,7 @@ function rangeOf(
   reference: Reference,
   { edges }: NumericAxis,
   table: ReferenceTable | null,
-  observed: ReferenceSources['observed'],
+  observed: Tally['trueRange'],
   where: string,
 ): { from: number; to: number } {
   const first = edges[0]!;

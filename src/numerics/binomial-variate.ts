@@ -1,4 +1,5 @@
 import type { RandomStream } from './random';
+import { stirlingError } from './stirling';
 
 /** Expected successes from which rejection beats counting: the method's own bound, below it its hat does not cover. */
 export const LEAST_EXPECTED_FOR_REJECTION = 10;
@@ -46,7 +47,7 @@ function byRejection(stream: RandomStream, trials: number, p: number): number {
   }
 }
 
-/** `ln(P(k) / P(mode))` of a binomial, by Stirling's series with its remainder. */
+/** `ln(P(k) / P(mode))` of a binomial, by Stirling's formula with its error. */
 function logRatioToMode(trials: number, p: number, k: number): number {
   const mode = Math.floor((trials + 1) * p);
   const odds = p / (1 - p);
@@ -54,27 +55,9 @@ function logRatioToMode(trials: number, p: number, k: number): number {
     (mode + 0.5) * Math.log((mode + 1) / (odds * (trials - mode + 1))) +
     (trials + 1) * Math.log1p((k - mode) / (trials - k + 1)) +
     (k + 0.5) * Math.log((odds * (trials - k + 1)) / (k + 1)) +
-    remainder(mode) +
-    remainder(trials - mode) -
-    remainder(k) -
-    remainder(trials - k)
+    stirlingError(mode + 1) +
+    stirlingError(trials - mode + 1) -
+    stirlingError(k + 1) -
+    stirlingError(trials - k + 1)
   );
-}
-
-/** `ln k! - ((k + 1/2) ln(k + 1) - (k + 1) + ln(2 pi) / 2)`: exact below 10, else the series, good to 1e-12 there. */
-const SMALL_REMAINDERS = remaindersBelow(10);
-
-function remainder(k: number): number {
-  if (k < SMALL_REMAINDERS.length) return SMALL_REMAINDERS[k]!;
-  const x = 1 / (k + 1);
-  return x * (1 / 12 - x * x * (1 / 360 - x * x * (1 / 1260 - (x * x) / 1680)));
-}
-
-function remaindersBelow(count: number): Float64Array {
-  const values = new Float64Array(count);
-  for (let k = 0, logFactorial = 0; k < count; k++) {
-    if (k > 0) logFactorial += Math.log(k);
-    values[k] = logFactorial - ((k + 0.5) * Math.log(k + 1) - (k + 1) + Math.log(2 * Math.PI) / 2);
-  }
-  return values;
 }

@@ -1,4 +1,6 @@
 import type { AuditInput } from '../../../src/audit/audit-input';
+import type { MatrixSampler } from '../../../src/audit/matrix-draws';
+import { drawBlock, planEnsemble } from '../../../src/ensemble/draw';
 import { posteriorOf } from '../../../src/posterior/posterior';
 import { evenPrior } from '../../../src/posterior/prior';
 import { parseStudy, resolveAxis, type Study, type StudyInput } from '../../../src/study/study';
@@ -29,3 +31,9 @@ export function inputOf(study: Study, tally: Tally): AuditInput {
     posterior: posteriorOf(tally.cells, prior),
   };
 }
+
+/** The program's own sampler, as it is handed to the audit. */
+export const sampler: MatrixSampler = (from, seed) => {
+  const plan = planEnsemble(from);
+  return (block, replicas, out) => drawBlock(plan, seed, block, replicas, out);
+};

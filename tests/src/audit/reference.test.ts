@@ -32,9 +32,14 @@ const axisOf = (edges: number[], spacing: 'linear' | 'log' = 'linear'): Axis => 
   spacing,
   edges: Float64Array.from(edges),
 });
-const emptyTally = (bins: number) => {
+const emptyTally = (bins: number, observed: [number, number] | null = null) => {
   const names = namesOf(bins);
-  return tallyOf({ columnNames: names, outcomeNames: ['b1'], events: names.map(() => [0]) });
+  return tallyOf({
+    columnNames: names,
+    outcomeNames: ['b1'],
+    events: names.map(() => [0]),
+    trueRange: observed && { least: observed[0], greatest: observed[1] },
+  });
 };
 const far = (found: Float64Array, expected: number[]): number =>
   Math.max(...expected.map((value, i) => Math.abs(found[i]! - value) / Math.max(Math.abs(value), 1e-12)));
@@ -43,11 +48,8 @@ describe('The reference spectrum', () => {
   it.each(made.cases)(
     'of $name agrees with quadrature at 40 digits (mpmath, tests/reference/reference-spectrum)',
     (c) => {
-      const sources = {
-        readTable: () => c.table!,
-        observed: c.observed ? { least: c.observed[0], greatest: c.observed[1] } : undefined,
-      };
-      const found = referenceOf(c.reference, axisOf(c.edges, c.spacing), emptyTally(c.edges.length - 1), sources);
+      const tally = emptyTally(c.edges.length - 1, c.observed);
+      const found = referenceOf(c.reference, axisOf(c.edges, c.spacing), tally, { readTable: () => c.table! });
       // A steep law's digits go with its exponent: index 250 over two decades is a factor of 1e502.
       const tolerance = TOLERANCE * Math.max(1, Math.abs(c.reference.index ?? 0));
       expect(far(found.contents, c.contents)).toBeLessThan(tolerance);

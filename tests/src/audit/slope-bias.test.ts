@@ -160,6 +160,5 @@ describe('Slope bias in odd studies', () => {
     const { flags } = slopeBiasOf(inputOf(studyOf(COLUMNS, OUTCOMES), tally), reference);
     const share = flags.filter(({ state }) => state === 'flagged').length / COLUMNS;
     expect(share).toBeLessThan(0.05 + 3 * Math.sqrt((0.05 * 0.95) / COLUMNS));
-    console.log(share);
   });
 });
