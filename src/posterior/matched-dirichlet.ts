@@ -6,7 +6,7 @@ import { columnMoments } from './share-moments';
  * at which its summed variance is that of the column. Exact for a column of equal weights; else only cell by cell
  * approximate, so it is handed over under this name alone. Throws `RangeError` for a column without posterior.
  */
-export function matchedDirichlet(posterior: Posterior, j: number): Float64Array {
+export function matchedDirichlet(posterior: Pick<Posterior, 'outcomes' | 'shape' | 'scale'>, j: number): Float64Array {
   const { shape, scale } = columnOf(posterior, j);
   const { mean, variance } = columnMoments(shape, scale);
   if (!scale) return shape.slice();

@@ -92,7 +92,10 @@ function meanWeightScale(weights: Float64Array, squares: Float64Array, from: num
 }
 
 /** Shapes and scales of column `j` as views. `scale` is `null` where the column is a Dirichlet. */
-export function columnOf(posterior: Posterior, j: number): { shape: Float64Array; scale: Float64Array | null } {
+export function columnOf(
+  posterior: Pick<Posterior, 'outcomes' | 'shape' | 'scale'>,
+  j: number,
+): { shape: Float64Array; scale: Float64Array | null } {
   const from = j * posterior.outcomes;
   const shape = posterior.shape.subarray(from, from + posterior.outcomes);
   const scale = posterior.scale?.subarray(from, from + posterior.outcomes) ?? null;
