@@ -43,6 +43,21 @@ export class BatchBuilder {
     this.rejects.push({ place, column, value: short, reason });
   }
 
+  /** Takes back those of the last `count` rows that are bad, by their index in the batch, and rejects each. */
+  withdraw(count: number, bad: ReadonlyMap<number, { column: string; value: string }>, reason: string): void {
+    const arrays = [this.places, ...this.numbers, ...this.codes, ...this.high, ...this.low];
+    let kept = this.rows - count;
+    for (let row = kept; row < this.rows; row++) {
+      const fault = bad.get(row);
+      if (fault) this.reject(this.places[row], fault.column, fault.value, reason);
+      else {
+        for (const array of arrays) if (array.length > 0) array[kept] = array[row];
+        kept += 1;
+      }
+    }
+    this.rows = kept;
+  }
+
   /** Hands on what was gathered and starts anew. */
   take(bytes: number, placesPassed: number): Batch {
     const { rows, rejects } = this;

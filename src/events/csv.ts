@@ -7,6 +7,7 @@ import { inspectTable } from './inspect-table';
 import { LineBlocks, lineStart } from './lines';
 import { parseNumber } from './number';
 import { compressionOf, openBytes, type Compression } from './open-bytes';
+import { positionsOf } from './positions';
 import { RowParser, type Layout } from './row-parser';
 import { readHead, type TableHead } from './table-head';
 
@@ -34,7 +35,8 @@ export const csv: Reader = {
   async plan(path, name, needs, pieces) {
     const compression = compressionOf(path, name);
     const head = await readHead(path, name, compression);
-    const positions = needs.map(({ column }) => positionOf(column, head, name));
+    for (const { column } of needs) checkPresent(column, head, name);
+    const positions = positionsOf(needs, head.header, name);
     if (head.doubt !== null) throw new InputError(name, head.doubt, 'separate all lines by the same sign');
     const { delimiter, header, headerLines } = head;
     const detail: Detail = { delimiter, header, headerLines, positions, compression };
@@ -90,24 +92,16 @@ function cut(size: number, count: number): [number, number][] {
   return Array.from({ length: count }, (_, i) => [edge(i), edge(i + 1)]);
 }
 
-function positionOf(column: string, { header, doubt }: TableHead, name: string): number {
-  const at = header.indexOf(column);
-  if (at < 0) throw absent(column, header, doubt, name);
-  const again = header.indexOf(column, at + 1);
-  if (again < 0) return at;
-  const what = `two columns are named "${column}", number ${at + 1} and number ${again + 1}`;
-  throw new InputError(name, what, 'rename one of them in the header');
-}
-
-function absent(column: string, header: string[], doubt: string | null, name: string): InputError {
+/** Throws `InputError` for an absent column where the table seems to be separated otherwise or to have no header. */
+function checkPresent(column: string, { header, doubt }: TableHead, name: string): void {
+  if (header.includes(column)) return;
   if (doubt !== null) {
-    return new InputError(name, `no column "${column}": ${doubt}`, 'separate by comma, tab, semicolon or bar');
+    throw new InputError(name, `no column "${column}": ${doubt}`, 'separate by comma, tab, semicolon or bar');
   }
   const encoder = new TextEncoder();
   const isNumber = (text: string) => !Number.isNaN(parseNumber(encoder.encode(text), 0, text.length));
   if (header.every(isNumber)) {
     const what = `no column "${column}": the first line reads ${header.join(', ')}, so there is no header`;
-    return new InputError(name, what, 'put a line with the names of the columns first');
+    throw new InputError(name, what, 'put a line with the names of the columns first');
   }
-  return new InputError(name, `no column "${column}"`, `the columns are ${header.join(', ')}`);
 }

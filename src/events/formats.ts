@@ -1,13 +1,21 @@
 import type { Reader } from './batch';
+import { firstBytes } from './byte-source';
 import { csv } from './csv';
+import { parquet } from './parquet';
 
 /** All formats of event files that can be read. */
-export const READERS: readonly Reader[] = [csv];
+export const READERS: readonly Reader[] = [csv, parquet];
 
-/** The reader of a file, by its content and then by its name's ending. Throws `InputError` where none fits. */
-export async function readerFor(_path: string): Promise<Reader> {
-  return csv;
+/** First bytes by which a format is known. */
+const MAGIC: [Reader, string][] = [[parquet, 'PAR1']];
+
+/** The reader of a file, by its content. What no other format claims is taken for a delimited table. */
+export async function readerFor(path: string): Promise<Reader> {
+  const first = Buffer.from(firstBytes(path, path, LONGEST_MAGIC)).toString('latin1');
+  return MAGIC.find(([, magic]) => first.startsWith(magic))?.[0] ?? csv;
 }
+
+const LONGEST_MAGIC = 16;
 
 /** The reader of a format that `readerFor` found before. */
 export function readerOfFormat(format: string): Reader {

@@ -1,0 +1,148 @@
+import { tmpdir } from 'node:os';
+import type { DuckDBConnection, DuckDBDataChunk, DuckDBResult } from '@duckdb/node-api';
+import { Cancelled, InputError } from '../study/input-error';
+
+/** Threads of one reading: DuckDB decodes beside the thread that takes the values. */
+const THREADS = '2';
+/** What DuckDB may hold, a few row groups: its own limit would be a share of the whole machine. */
+const MEMORY = '400MB';
+
+/** Settings in the order that locks: the one path, then nothing else, then nothing more to be set. */
+const LOCKS = [
+  'SET allowed_paths = [$1]',
+  'SET enable_external_access = false',
+  'SET lock_configuration = true',
+] as const;
+
+/** A column of a file as DuckDB tells it. */
+export interface TypedColumn {
+  name: string;
+  /** The SQL name of its type, such as `BIGINT` or `DECIMAL(18,3)`. */
+  type: string;
+}
+
+/** A chunk of a result, of which only the first `rows` rows are rows of the file. */
+export interface Rows {
+  chunk: DuckDBDataChunk;
+  rows: number;
+}
+
+/**
+ * One connection to a database in memory that can reach one file and nothing else. The file's path is always bound, and
+ * its columns are named by position: no text of a study or file ever becomes SQL.
+ */
+export class OneFile {
+  private constructor(
+    private readonly connection: DuckDBConnection,
+    private readonly closeAll: () => void,
+    private readonly path: string,
+    private readonly name: string,
+    /** A table function of the path `$1`. */
+    private readonly table: string,
+  ) {}
+
+  static async open(path: string, name: string, table: string): Promise<OneFile> {
+    const { DuckDBInstance } = await import('@duckdb/node-api');
+    const instance = await DuckDBInstance.create(':memory:', {
+      threads: THREADS,
+      memory_limit: MEMORY,
+      temp_directory: tmpdir(),
+      autoinstall_known_extensions: 'false',
+      autoload_known_extensions: 'false',
+    });
+    const connection = await instance.connect();
+    for (const lock of LOCKS) await connection.run(lock, lock.includes('$1') ? [path] : []);
+    const closeAll = (): void => {
+      connection.closeSync();
+      instance.closeSync();
+    };
+    return new OneFile(connection, closeAll, path, name, table);
+  }
+
+  close(): void {
+    this.closeAll();
+  }
+
+  /** All columns, in order. Throws `InputError` where the file is damaged or of another format. */
+  async columns(): Promise<TypedColumn[]> {
+    try {
+      const result = await this.connection.run(`SELECT * FROM ${this.table} LIMIT 0`, [this.path]);
+      return result.columnNames().map((name, i) => ({ name, type: String(result.columnType(i)) }));
+    } catch (cause) {
+      throw this.fault(0, cause);
+    }
+  }
+
+  /** The number of rows. */
+  async count(): Promise<number> {
+    try {
+      const result = await this.connection.run(`SELECT count(*)::DOUBLE FROM ${this.table}`, [this.path]);
+      return (await result.getRowsJS())[0][0] as number;
+    } catch (cause) {
+      throw this.fault(0, cause);
+    }
+  }
+
+  /**
+   * Every row of the file, in order: `expressions` over its columns `c0`, `c1`, ... (`columns` of them), in chunks. The
+   * stream of a DuckDB result ends quietly where the reading fails (see `UNION ALL` below): a stream that does not end
+   * with the row that stands only there throws `InputError` with DuckDB's message.
+   */
+  async *rows(expressions: string[], columns: number, signal?: AbortSignal): AsyncGenerator<Rows> {
+    const interrupt = (): void => this.connection.interrupt();
+    signal?.addEventListener('abort', interrupt);
+    let passed = 0;
+    try {
+      const result = await this.start(expressions, columns);
+      const last = expressions.length;
+      // The next chunk is asked for before this one is worked on: DuckDB decodes meanwhile.
+      for (let next = result.fetchChunk(); ;) {
+        const chunk = await next;
+        if (signal?.aborted) throw new Cancelled();
+        if (chunk === null || chunk.rowCount === 0) break;
+        const ends = chunk.getColumnVector(last).getItem(chunk.rowCount - 1) === 1;
+        if (!ends) next = result.fetchChunk();
+        const rows = chunk.rowCount - (ends ? 1 : 0);
+        passed += rows;
+        yield { chunk, rows };
+        if (ends) return;
+      }
+      throw await this.reasonOf(expressions, columns, passed);
+    } catch (cause) {
+      if (signal?.aborted) throw new Cancelled();
+      throw cause instanceof InputError || cause instanceof Cancelled ? cause : this.fault(passed, cause);
+    } finally {
+      signal?.removeEventListener('abort', interrupt);
+    }
+  }
+
+  private start(expressions: string[], columns: number): Promise<DuckDBResult> {
+    const ending = expressions.map(() => 'NULL').join(', ');
+    const sql = `SELECT ${[...expressions, '0::TINYINT'].join(', ')} FROM ${this.from(columns)}
+      UNION ALL SELECT ${ending === '' ? '' : `${ending}, `}1::TINYINT`;
+    return this.connection.stream(sql, [this.path]);
+  }
+
+  private from(columns: number): string {
+    return `${this.table} AS t(${Array.from({ length: columns }, (_, i) => `c${i}`).join(', ')})`;
+  }
+
+  /** Why a stream broke off: the same values asked for once more as an aggregate, which does tell. */
+  private async reasonOf(expressions: string[], columns: number, passed: number): Promise<InputError> {
+    const counts = expressions.map((expression) => `count(${expression})`);
+    try {
+      await this.connection.run(`SELECT ${[...counts, 'count(*)'].join(', ')} FROM ${this.from(columns)}`, [this.path]);
+    } catch (cause) {
+      return this.fault(passed, cause);
+    }
+    return this.fault(passed, new Error('the reading broke off'));
+  }
+
+  private fault(passed: number, cause: unknown): InputError {
+    const message = (cause as Error).message.replaceAll(this.path, this.name);
+    const where = passed > 0 ? ` behind row ${passed}` : '';
+    return new InputError(this.name, `damaged or unreadable${where} (${message})`, 'copy or make the file again', {
+      cause,
+    });
+  }
+}
