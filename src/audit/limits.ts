@@ -1,6 +1,8 @@
 import { betaCdf } from '../numerics/beta';
+import { normalQuantile } from '../numerics/normal';
 import type { Marginal } from '../posterior/marginal';
 import { answer, type FlagState } from './flag';
+import { ASSURANCE, leastGrowth } from './settling';
 
 /** On which side of its limit a share is beyond it. */
 export type Side = 'above' | 'below';
@@ -14,11 +16,8 @@ export function probabilityBeyond({ a, b }: Marginal, limit: number, side: Side)
 /** More events in one column than any campaign takes: a limit that needs them is as good as not to be settled. */
 export const MOST_EVENTS = 1e9;
 
-/** How surely the events asked for are to settle a limit, if the share stays as it is: one-sided normal 95 %. */
-const ASSURANCE_DEVIATES = 1.6449;
-
-/** Bisection ends when the number is known to this part: two digits are shown. */
-const EVENTS_PRECISION = 1e-3;
+/** Standard deviations of the fluctuation that as many campaigns as `ASSURANCE` says do not exceed. */
+const UNLUCKY = normalQuantile(ASSURANCE);
 
 export interface Settlement {
   /** Events to add to the column. */
@@ -46,7 +45,7 @@ export function eventsToSettle(
     const later = grown(marginal, events * growth, unlucky);
     return answer(probabilityBeyond(later, limit, side), credibility) === as;
   };
-  const events = leastThat(settles);
+  const events = leastEvents(settles);
   return events === null ? null : { events, as };
 }
 
@@ -58,7 +57,7 @@ export function eventsToClear(
   credibility: number,
   growth: number,
 ): number | null {
-  return leastThat((events) => {
+  return leastEvents((events) => {
     const added = events * growth;
     const later = side === 'above' ? { ...marginal, b: marginal.b + added } : { ...marginal, a: marginal.a + added };
     return answer(probabilityBeyond(later, limit, side), credibility) === 'clear';
@@ -68,23 +67,12 @@ export function eventsToClear(
 /** The marginal after `added` to its total, the share of it in `a` off by an unlucky fluctuation towards `sign`. */
 function grown({ a, b, method }: Marginal, added: number, sign: number): Marginal {
   const mean = a / (a + b);
-  const expected = added * mean + sign * ASSURANCE_DEVIATES * Math.sqrt(added * mean * (1 - mean));
+  const expected = added * mean + sign * UNLUCKY * Math.sqrt(added * mean * (1 - mean));
   const inside = Math.min(added, Math.max(0, expected));
   return { a: a + inside, b: b + added - inside, method };
 }
 
-/** The least number of events, to two digits and more, from which on `settles` holds; found by doubling and bisection. */
-function leastThat(settles: (events: number) => boolean): number | null {
-  let high = 1;
-  while (!settles(high)) {
-    if (high >= MOST_EVENTS) return null;
-    high = Math.min(MOST_EVENTS, 2 * high);
-  }
-  let low = high / 2;
-  while (high - low > Math.max(1, EVENTS_PRECISION * high)) {
-    const middle = (low + high) / 2;
-    if (settles(middle)) high = middle;
-    else low = middle;
-  }
-  return Math.ceil(high);
+function leastEvents(settles: (events: number) => boolean): number | null {
+  const events = leastGrowth(settles, MOST_EVENTS);
+  return events && Math.ceil(events);
 }

@@ -14,6 +14,7 @@ export const PURPOSE = {
   test: 6,
   slopeBias: 7,
   compare: 8,
+  resolution: 9,
 } as const;
 export type Purpose = (typeof PURPOSE)[keyof typeof PURPOSE];
 

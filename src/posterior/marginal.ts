@@ -27,6 +27,29 @@ export function marginalOf(posterior: Posterior, j: number, chosen: readonly num
   return { a, b, method: 'exact' };
 }
 
+/**
+ * Marginal of the probability of `chosen` outcomes given that one of `among` happened, `chosen` within `among`: a part
+ * of a Dirichlet is a Dirichlet, a part of normalised gammas normalised gammas. `null` where the column has no posterior
+ * on `among`: no events there and a prior of zero.
+ */
+export function conditionalMarginal(
+  posterior: Posterior,
+  j: number,
+  chosen: readonly number[],
+  among: readonly number[],
+): Marginal | null {
+  const column = columnOf(posterior, j);
+  const shape = Float64Array.from(among, (k) => column.shape[k]!);
+  if (shape.every((a) => a === 0)) return null;
+  const scale = column.scale && Float64Array.from(among, (k) => column.scale![k]!);
+  const part = { ...posterior, columns: 1, outcomes: among.length, shape, scale };
+  return marginalOf(
+    part,
+    0,
+    chosen.map((k) => among.indexOf(k)),
+  );
+}
+
 /** Marginal of every single outcome of column `j`, as `marginalOf` of each but at the cost of one. */
 export function cellMarginals(posterior: Posterior, j: number): Marginal[] {
   const { shape, scale } = columnOf(posterior, j);

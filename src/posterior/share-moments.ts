@@ -46,6 +46,36 @@ export function columnMoments(
   return { mean, variance };
 }
 
+/**
+ * Mean and variance of a weighted sum of the shares of a column, `sum factors_k p_k`: a mean reconstructed value, the
+ * content below a value, a difference of shares. As exact as the variance of a single share.
+ */
+export function linearMoments(
+  shape: Float64Array,
+  scale: Float64Array | null,
+  factors: Float64Array,
+): { mean: number; variance: number } {
+  requireShape(shape);
+  if (scale) {
+    const rule = shareQuadrature(shape, scale);
+    const members = [...shape.keys()];
+    const mean = sumsOf(rule, members, factors).mean;
+    // A constant taken off every factor moves no variance: about the mean, nothing large is left to cancel.
+    return {
+      mean,
+      variance: varianceOf(
+        rule,
+        members,
+        factors.map((f) => f - mean),
+      ),
+    };
+  }
+  const total = shape.reduce((sum, a) => sum + a, 0);
+  const mean = shape.reduce((sum, a, k) => sum + (a / total) * factors[k]!, 0);
+  const square = shape.reduce((sum, a, k) => sum + (a / total) * (factors[k]! - mean) ** 2, 0);
+  return { mean, variance: square / (total + 1) };
+}
+
 /** Covariances between the shares of a column, `[outcomes, outcomes]`. */
 export function shareCovariances(shape: Float64Array, scale: Float64Array | null): Float64Array {
   const n = shape.length;
@@ -68,8 +98,8 @@ export function shareCovariances(shape: Float64Array, scale: Float64Array | null
 }
 
 /**
- * Averages over the mixing mass that moments of a sum `C` of outcomes are made of; `rho` is its share at a node, `d` the
- * deviation of `rho` from its mean.
+ * Averages over the mixing mass that moments of a sum of outcomes, each times its factor, are made of; `rho` is that sum
+ * at a node, `d` its deviation from the mean.
  */
 interface Sums {
   /** `<rho>`. */
@@ -78,25 +108,26 @@ interface Sums {
   tilt: number;
   /** `<g d^2>`. */
   shared: number;
-  /** `sum over C of <rho_k^2 g / shape_k>`: what the gammas' own variances add. */
+  /** `sum of factor_k^2 <rho_k^2 g / shape_k>`: what the gammas' own variances add. */
   spread: number;
   /** `d` at each node. */
   steps: Float64Array;
 }
 
-function sumsOf(rule: ShareQuadrature, members: readonly number[]): Sums {
+function sumsOf(rule: ShareQuadrature, members: readonly number[], factors?: Float64Array): Sums {
   const { nodes, mass, total, centre, meanStep, stretch } = rule;
   const steps = new Float64Array(nodes.length);
   let mean = 0;
   let spread = 0;
   for (const k of members) {
-    const [a, s, share] = [rule.shape[k]!, rule.scale[k]!, rule.atCentre[k]!];
+    const factor = factors ? factors[k]! : 1;
+    const [a, s, share] = [rule.shape[k]!, rule.scale[k]!, factor * rule.atCentre[k]!];
     for (let i = 0; i < nodes.length; i++) {
       const inverse = 1 / (1 + s * nodes[i]!);
       const part = s * nodes[i]! * inverse;
       const weight = ((mass[i]! * a) / total[i]!) * part;
-      mean += weight;
-      spread += weight * part;
+      mean += factor * weight;
+      spread += factor * factor * weight * part;
       steps[i]! += share * (meanStep[i]! - s * (nodes[i]! - centre) * inverse) * stretch[i]!;
     }
   }
@@ -127,8 +158,8 @@ function covariance(k: Sums, l: Sums, shared: number, own: number, spread: numbe
   return own - k.mean * l.mean * spread + k.mean * l.tilt + l.mean * k.tilt + shared;
 }
 
-function varianceOf(rule: ShareQuadrature, members: readonly number[]): number {
-  const sums = sumsOf(rule, members);
+function varianceOf(rule: ShareQuadrature, members: readonly number[], factors?: Float64Array): number {
+  const sums = sumsOf(rule, members, factors);
   return Math.max(0, covariance(sums, sums, sums.shared, sums.spread, totalSpread(rule)));
 }
 

@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { columnMoments, shareCovariances, shareMoments } from '../../../src/posterior/share-moments';
+import { columnMoments, linearMoments, shareCovariances, shareMoments } from '../../../src/posterior/share-moments';
 import { PURPOSE, streamOf } from '../../../src/numerics/random';
 import { shareQuadrature } from '../../../src/posterior/share-quadrature';
 import { fastest } from './fastest';
@@ -30,6 +30,24 @@ describe('moments of shares (mpmath at 60 digits, tests/reference/share-moments/
       const { mean, variance } = shareMoments(shape, scale, values.chosen);
       expectRelative(mean, values.chosenMean, MEAN_TOLERANCE, 'mean');
       expectRelative(variance, values.chosenVariance, VARIANCE_TOLERANCE, 'variance');
+    });
+
+    it(`${name}: mean and variance of a weighted sum of outcomes`, () => {
+      const n = shape.length;
+      const factors = shape.map((_, k) => 3 * k - 2);
+      const { mean, variance } = linearMoments(shape, scale, factors);
+      let expected = 0;
+      for (let i = 0; i < n * n; i++) {
+        expected += factors[Math.floor(i / n)]! * factors[i % n]! * values.covariance[i]!;
+      }
+      expectRelative(
+        mean,
+        values.mean.reduce((sum, m, k) => sum + m * factors[k]!, 0),
+        1e-11,
+        'mean',
+      );
+      // The sum over the reference's own covariances, of 16 digits each, loses some: 1e-9 is what it is good for.
+      expectRelative(variance, expected, 1e-9, 'variance');
     });
 
     it(`${name}: covariances between outcomes, relative to the standard deviations`, () => {
@@ -78,6 +96,19 @@ describe('moments of shares, laws', () => {
         const row = covariance.subarray(4 * k, 4 * k + 4);
         expect(Math.abs(row.reduce((a, b) => a + b)) / row[k]!).toBeLessThan(VARIANCE_TOLERANCE);
       }
+    }
+  });
+
+  it('a weighted sum has the same moments in closed form and by quadrature, and equal factors no variance', () => {
+    const factors = Float64Array.of(-3, 0, 1e4, 7);
+    const closed = linearMoments(shape, null, factors);
+    const byRule = linearMoments(shape, new Float64Array(4).fill(3), factors);
+    expectRelative(byRule.mean, closed.mean, MEAN_TOLERANCE, 'mean');
+    expectRelative(byRule.variance, closed.variance, VARIANCE_TOLERANCE, 'variance');
+    for (const scale of [null, Float64Array.of(1, 40, 0.3, 2)]) {
+      const { mean, variance } = linearMoments(shape, scale, new Float64Array(4).fill(5));
+      expectRelative(mean, 5, MEAN_TOLERANCE, 'mean');
+      expect(variance).toBeLessThan(1e-24);
     }
   });
 
