@@ -8,6 +8,8 @@ export default defineConfig({
   main: {
     build: {
       target: 'node20',
+      // Bundled, because a start of the command line would else read hundreds of small files.
+      externalizeDeps: { exclude: ['zod', 'commander', 'tinyglobby', 'arquero', '@uwdata/flechette', 'acorn', 'fdir', 'picomatch'] },
       rolldownOptions: {
         input: {
           command: resolve(here, 'main/command.ts'),

@@ -14,6 +14,7 @@ import { posteriorOf, type Posterior } from '../src/posterior/posterior';
 import { priorOf } from '../src/posterior/prior';
 import { summarise } from '../src/posterior/summary';
 import { InputError, stopIfCancelled } from '../src/study/input-error';
+import type { Axis } from '../src/study/axis';
 import { resolveAxis, type Study } from '../src/study/study';
 import type { Tally } from '../src/tally/tally';
 import { drawEnsemble } from './draw-ensemble';
@@ -54,23 +55,15 @@ export interface BuiltBundle {
 export async function buildBundle(options: BuildOptions): Promise<BuiltBundle> {
   const { study, source, signal, version } = options;
   const out = resolve(options.out);
-  const analysis = analyse(study, source.tally, options.where);
-  const { parameters } = analysis;
-  const contents: BundleContents = {
-    version,
-    study,
-    inputs: source.inputs.map(({ name, ...rest }) => ({ file: name, ...rest })),
-    tally: source.tally,
-    rejectedRows: source.rejectedRows(),
-    ...analysis,
-  };
+  const model = modelOf(study, source.tally, options.where);
   const folder = new FolderInTheMaking(out, MANIFEST);
   try {
     const { replicas, seed } = study.ensemble;
     const path = folder.pathOf(REPLICAS);
-    const drawing = drawEnsemble({ ...options, parameters, seed, replicas, path, place: out });
-    // The tables are written while the workers draw; a fault in them must not leave the drawing without a listener.
+    const drawing = drawEnsemble({ ...options, parameters: model.posterior, seed, replicas, path, place: out });
+    // Audit and tables are made while the workers draw; a fault in them must not leave the drawing without a listener.
     drawing.catch(() => undefined);
+    const contents = { version, study, ...bundleSource(source), ...model, ...auditedModel(study, source.tally, model) };
     writeBundleFiles(folder, contents);
     const drawn = await drawing;
     folder.record(REPLICAS, drawn.bytes, drawn.sha256);
@@ -85,16 +78,29 @@ export async function buildBundle(options: BuildOptions): Promise<BuiltBundle> {
   }
 }
 
-/** Posterior, summary and audit of a tally: everything a bundle says about it, but the draws. */
-export function analyse(study: Study, tally: Tally, where: string) {
+function bundleSource({ tally, inputs, rejectedRows }: BundleSource) {
+  const named = inputs.map(({ name, bytes, sha256, rows, rejected }) => ({ file: name, bytes, sha256, rows, rejected }));
+  return { tally, inputs: named, rejectedRows: rejectedRows() };
+}
+
+/** Axes and posterior of a tally. Throws `InputError` where the prior gives a column none. */
+export function modelOf(study: Study, tally: Tally, where: string): Model {
   const trueAxis = resolveAxis(study.axes.true);
   const recoAxis = resolveAxis(study.axes.reconstructed);
-  const prior = priorOf(study.prior, tally, trueAxis, recoAxis);
-  const posterior = posteriorOf(tally.cells, prior);
+  const posterior = posteriorOf(tally.cells, priorOf(study.prior, tally, trueAxis, recoAxis));
   checkPosterior(tally, posterior, where);
-  const summary = summarise(posterior, tally.cells.events, study.credibility);
-  const audit = auditOf({ study, trueAxis, recoAxis, tally, posterior });
-  return { trueAxis, recoAxis, posterior, parameters: posterior, summary, audit };
+  return { trueAxis, recoAxis, posterior };
+}
+
+export interface Model {
+  trueAxis: Axis;
+  recoAxis: Axis;
+  posterior: Posterior;
+}
+
+function auditedModel(study: Study, tally: Tally, model: Model) {
+  const summary = summarise(model.posterior, tally.cells.events, study.credibility);
+  return { summary, audit: auditOf({ study, tally, ...model }) };
 }
 
 /** A prior of zero is proper only where every outcome of every column was seen (statistics.md 3). */

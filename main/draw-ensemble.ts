@@ -1,7 +1,7 @@
 import { createHash } from 'node:crypto';
-import { closeSync, openSync, writeSync } from 'node:fs';
-import { open, type FileHandle } from 'node:fs/promises';
+import { closeSync, openSync } from 'node:fs';
 import { BLOCK, type SamplerParameters } from '../src/ensemble/draw';
+import { cannotWrite, writeWhole } from '../src/handover/folder-in-the-making';
 import { npyHeader } from '../src/handover/npy';
 import { Pool, withPool } from './pool';
 import type { Progress } from './progress';
@@ -22,38 +22,50 @@ export interface DrawOptions {
 }
 
 /**
- * Draws an ensemble in worker threads straight into an NPY file, `[replica, column, outcome]`, and returns its size
- * and SHA-256. The bytes depend on parameters, seed and number of replicas alone. Throws `Cancelled` on the signal.
+ * Draws an ensemble in worker threads into an NPY file, `[replica, column, outcome]`, and returns its size and
+ * SHA-256. The bytes depend on parameters, seed and number of replicas alone. Throws `Cancelled` on the signal and
+ * `InputError` where the place has no room.
  */
 export async function drawEnsemble(options: DrawOptions): Promise<{ bytes: number; sha256: string; shape: number[] }> {
-  const { parameters, replicas, path } = options;
+  const { parameters, replicas, path, place } = options;
+  const cells = parameters.columns * parameters.outcomes;
   const shape = [replicas, parameters.columns, parameters.outcomes];
-  const header = npyHeader('<f8', shape);
   const file = openSync(path, 'w');
-  writeSync(file, header);
-  closeSync(file);
-  const hash = createHash('sha256').update(header);
-  const reader = await open(path, 'r');
+  const hash = createHash('sha256');
+  let bytes = 0;
+  const put = (piece: Uint8Array): void => {
+    try {
+      writeWhole(file, piece);
+    } catch (cause) {
+      throw cannotWrite(place, cause);
+    }
+    hash.update(piece);
+    bytes += piece.length;
+  };
   try {
-    const blockBytes = BLOCK * parameters.columns * parameters.outcomes * 8;
-    const total = header.length + replicas * parameters.columns * parameters.outcomes * 8;
-    const hasher = new BlockHasher(reader, hash, header.length, blockBytes, total);
-    await overBlocks(options, header.length, 'write', async (pool, block, w) => {
-      await pool.call(w, 'write', { block });
-      hasher.written(block);
+    put(npyHeader('<f8', shape));
+    // One writer, in order: workers that write to one file wait for each other longer than the writing takes.
+    const slots = new Slots(Math.max(options.workers + 1, Math.floor(AHEAD_BYTES / (BLOCK * cells * 8))), BLOCK * cells * 8);
+    const inOrder = new InOrder<SharedArrayBuffer>((into, block) => {
+      put(new Uint8Array(into, 0, Math.min(BLOCK, replicas - block * BLOCK) * cells * 8));
+      slots.give(into);
     });
-    await hasher.finish();
-    return { bytes: total, sha256: hash.digest('hex'), shape };
+    await overBlocks(options, 'drawing', async (pool, block, w) => {
+      const into = await slots.take();
+      await pool.call(w, 'draw', { block, into });
+      inOrder.add(into, block);
+    });
   } finally {
-    await reader.close();
+    closeSync(file);
   }
+  return { bytes, sha256: hash.digest('hex'), shape };
 }
 
 /** Draws an ensemble again and returns the first cell of the file that differs, or `null`. */
 export async function checkEnsemble(options: DrawOptions, dataStart: number): Promise<Mismatch | null> {
   const found: Mismatch[] = [];
-  await overBlocks(options, dataStart, 'check', async (pool, block, w) => {
-    const mismatch = await pool.call(w, 'check', { block });
+  await overBlocks(options, 'checking', async (pool, block, w) => {
+    const mismatch = await pool.call(w, 'check', { block, path: options.path, dataStart });
     if (mismatch) found.push(mismatch);
   });
   return found.sort((a, b) => a.replica - b.replica)[0] ?? null;
@@ -61,67 +73,67 @@ export async function checkEnsemble(options: DrawOptions, dataStart: number): Pr
 
 async function overBlocks(
   options: DrawOptions,
-  dataStart: number,
-  mode: 'write' | 'check',
+  stage: 'drawing' | 'checking',
   work: (pool: Pool<DrawCalls>, block: number, w: number) => Promise<void>,
 ): Promise<void> {
-  const { parameters, seed, replicas, path, place, signal, onProgress } = options;
+  const { parameters, seed, replicas, signal, onProgress } = options;
   const blocks = Array.from({ length: Math.ceil(replicas / BLOCK) }, (_, b) => b);
   if (blocks.length === 0) return;
-  const size = Math.max(1, Math.min(options.workers, blocks.length));
-  const pool = new Pool<DrawCalls>(options.drawWorker, size);
+  const pool = new Pool<DrawCalls>(options.drawWorker, Math.max(1, Math.min(options.workers, blocks.length)));
   let done = 0;
   await withPool(pool, signal, async () => {
-    await pool.callAll('begin', { parameters, seed, replicas, path, place, dataStart, mode });
+    const { columns, outcomes, shape, scale } = parameters;
+    await pool.callAll('begin', { parameters: { columns, outcomes, shape, scale }, seed, replicas });
     await pool.share(blocks, async (block, _, w) => {
       await work(pool, block, w);
       done += Math.min(BLOCK, replicas - block * BLOCK);
-      onProgress?.({ stage: mode === 'write' ? 'drawing' : 'checking', done, total: replicas, unit: 'replicas' });
+      onProgress?.({ stage, done, total: replicas, unit: 'replicas' });
     });
-    await pool.callAll('end', null);
   });
 }
 
-const HASH_READ = 4 << 20;
+/** Blocks may be drawn this far ahead of the writing, which waits while the tables of a bundle are made. */
+const AHEAD_BYTES = 64 << 20;
 
-/** Hashes a file in order while its blocks are written out of order by others. */
-class BlockHasher {
-  private readonly ready = new Set<number>();
-  private next = 0;
-  private at: number;
-  private running: Promise<void> = Promise.resolve();
-  private readonly buffer: Buffer;
+/** Shared memory for blocks, handed out in the order it is asked for: memory stays bounded however many blocks. */
+class Slots {
+  private readonly free: SharedArrayBuffer[] = [];
+  private readonly waiting: ((slot: SharedArrayBuffer) => void)[] = [];
+  private made = 0;
 
   constructor(
-    private readonly file: FileHandle,
-    private readonly hash: ReturnType<typeof createHash>,
-    dataStart: number,
-    private readonly blockBytes: number,
-    private readonly total: number,
-  ) {
-    this.at = dataStart;
-    this.buffer = Buffer.allocUnsafe(Math.min(HASH_READ, Math.max(1, blockBytes)));
-  }
+    private readonly most: number,
+    private readonly bytes: number,
+  ) {}
 
-  /** Block `block` stands in the file. */
-  written(block: number): void {
-    this.ready.add(block);
-    while (this.ready.delete(this.next)) {
-      this.next++;
-      this.running = this.running.then(() => this.hashTo(Math.min(this.total, this.at + this.blockBytes)));
+  take(): Promise<SharedArrayBuffer> {
+    if (this.free.length === 0 && this.made < this.most) {
+      this.made++;
+      this.free.push(new SharedArrayBuffer(this.bytes));
     }
+    const slot = this.free.pop();
+    return slot ? Promise.resolve(slot) : new Promise((resolve) => this.waiting.push(resolve));
   }
 
-  async finish(): Promise<void> {
-    await this.running;
+  give(slot: SharedArrayBuffer): void {
+    const next = this.waiting.shift();
+    if (next) next(slot);
+    else this.free.push(slot);
   }
+}
 
-  private async hashTo(end: number): Promise<void> {
-    while (this.at < end) {
-      const { bytesRead } = await this.file.read(this.buffer, 0, Math.min(this.buffer.length, end - this.at), this.at);
-      if (bytesRead === 0) throw new Error('the ensemble ended while it was hashed');
-      this.hash.update(this.buffer.subarray(0, bytesRead));
-      this.at += bytesRead;
+/** Passes things on in the order of their numbers, however they come. */
+class InOrder<T> {
+  private readonly held = new Map<number, T>();
+  private next = 0;
+
+  constructor(private readonly pass: (thing: T, number: number) => void) {}
+
+  add(thing: T, number: number): void {
+    this.held.set(number, thing);
+    for (let due = this.held.get(this.next); due !== undefined; due = this.held.get(this.next)) {
+      this.held.delete(this.next);
+      this.pass(due, this.next++);
     }
   }
 }

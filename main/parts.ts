@@ -72,7 +72,7 @@ type PartDocument = z.output<typeof partSchema>;
 export function writePart(out: string, part: TallyPart): void {
   const folder = new FolderInTheMaking(resolve(out), PART);
   try {
-    const plain = part.sums.toPlain();
+    const plain = part.sums.toPlain(true);
     writeCellSums(folder, 'halves', plain.halves);
     plain.runs.forEach(({ cells }, r) => writeCellSums(folder, `runs/${r}`, cells));
     if (plain.unmatched) writeCellSums(folder, 'unmatched', plain.unmatched);

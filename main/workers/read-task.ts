@@ -73,6 +73,9 @@ export function readTask(): Handlers<ReadCalls> {
   };
 }
 
+/** Progress is told no finer: messages cost, and nobody sees the difference. */
+const BYTES_BETWEEN_NOTES = 2 << 20;
+
 class Reading {
   private readonly selection: Selection;
   private readonly sums: TallySums;
@@ -92,6 +95,7 @@ class Reading {
     const { plan, scratch } = this.options;
     const reader = readerOfFormat(unit.format);
     const done: UnitDone = { placesPassed: 0, rejected: 0, rows: 0 };
+    let told = { bytes: 0, rows: 0 };
     const rejectsFile = new RejectsFile(rejectsPath(scratch, ordinal));
     const placeOf = (place: number): string => placeInUnit(unit, reader.places, place);
     try {
@@ -104,8 +108,14 @@ class Reading {
         done.placesPassed = batch.placesPassed;
         done.rejected += rejects.length;
         done.rows += batch.rows + batch.rejects.length;
-        note({ bytes: batch.bytes, rows: batch.rows + batch.rejects.length });
+        told.bytes += batch.bytes;
+        told.rows += batch.rows + batch.rejects.length;
+        if (told.bytes >= BYTES_BETWEEN_NOTES) {
+          note(told);
+          told = { bytes: 0, rows: 0 };
+        }
       }
+      note(told);
     } finally {
       rejectsFile.close();
     }
@@ -114,7 +124,7 @@ class Reading {
 
   finish(): ReadingDone {
     this.spill?.finish();
-    const sums = this.sums.toPlain();
+    const sums = this.sums.toPlain(false);
     const { ledger } = this.selection;
     // The selection saw every row, the sums what it selected: together they are the ledger of this worker.
     sums.ledger.read = ledger.read;
@@ -128,7 +138,7 @@ class Reading {
   retally(plan: TallyPlan): PlainTallySums {
     const sums = new TallySums(plan);
     for (const events of this.keptEvents()) sums.add(events, this.selection.runLabels);
-    return sums.toPlain();
+    return sums.toPlain(false);
   }
 
   values(of: 'true' | 'reconstructed'): Float64Array {

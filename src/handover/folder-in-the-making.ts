@@ -116,7 +116,8 @@ function isReplaceable(place: string, marker: string): boolean {
   return existsSync(join(place, marker)) || readdirSync(place).length === 0;
 }
 
-function writeWhole(file: number, piece: Uint8Array): void {
+/** Writes all of a piece: one call may write less. */
+export function writeWhole(file: number, piece: Uint8Array): void {
   for (let at = 0; at < piece.length;) at += writeSync(file, piece, at, piece.length - at);
 }
 

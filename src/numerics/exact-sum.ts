@@ -60,11 +60,20 @@ export class ExactSums {
     return Float64Array.from({ length: this.cells }, (_, cell) => this.value(cell));
   }
 
+  /** The expansions as they stand, `[cells, stride]`: for a message to another thread. The arrays are this object's own. */
+  toParts(): { stride: number; partials: Float64Array } {
+    const { stride, partials, counts } = this;
+    for (let cell = 0; cell < this.cells; cell++) {
+      partials.fill(0, cell * stride + counts[cell]!, (cell + 1) * stride);
+    }
+    return { stride, partials };
+  }
+
   /**
    * The expansions as `[cells, stride]`, each the rounded sum, then the rounded rest, and so on to nothing: there is
    * only one such expansion of a number, so equal sums give equal bytes.
    */
-  toParts(): { stride: number; partials: Float64Array } {
+  canonicalParts(): { stride: number; partials: Float64Array } {
     const expansions = Array.from({ length: this.cells }, (_, cell) => this.canonical(cell));
     const stride = expansions.reduce((most, { length }) => Math.max(most, length), 1);
     const partials = new Float64Array(this.cells * stride);
@@ -81,6 +90,8 @@ export class ExactSums {
   }
 
   private canonical(cell: number): number[] {
+    if (this.counts[cell]! < 2)
+      return [...this.partials.subarray(cell * this.stride, cell * this.stride + this.counts[cell]!)];
     const rest = new ExactSums(1);
     rest.addFrom(0, this, cell);
     const expansion: number[] = [];

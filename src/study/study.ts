@@ -1,6 +1,8 @@
 import { z } from 'zod';
-import { evenEdges, type Axis } from './axis';
 import { InputError } from './input-error';
+import { resolveAxis } from './resolve-axis';
+
+export { resolveAxis };
 
 /** The study document, schema `entasis.study/1`: everything a build depends on besides the events themselves. */
 export const STUDY_SCHEMA = 'entasis.study/1';
@@ -154,14 +156,6 @@ export function parseJson(text: string, where: string): unknown {
 
 function lastLine(text: string): number {
   return text.trimEnd().split('\n').length;
-}
-
-/** The axis of a checked study, with its edges made. */
-export function resolveAxis(axis: AxisDocument): Axis {
-  if ('tags' in axis) return { kind: 'tags', label: axis.label, unit: '', tags: axis.tags };
-  const edges =
-    'edges' in axis ? Float64Array.from(axis.edges) : evenEdges(axis.from, axis.to, axis.bins, axis.spacing);
-  return { kind: 'numeric', label: axis.label, unit: axis.unit, spacing: axis.spacing, edges };
 }
 
 function axisSchemaOf(value: unknown): z.ZodType {

@@ -69,12 +69,9 @@ export class CellSums {
     };
   }
 
-  /** Canonical: equal sums give equal bytes. */
-  toPlain(): PlainCellSums {
-    return {
-      events: this.events,
-      weights: this.weights?.toParts() ?? null,
-      squares: this.squares?.toParts() ?? null,
-    };
+  /** As plain arrays. Canonical ones are equal to the byte where the sums are equal. */
+  toPlain(canonical: boolean): PlainCellSums {
+    const plain = (sums: ExactSums | null) => sums && (canonical ? sums.canonicalParts() : sums.toParts());
+    return { events: this.events, weights: plain(this.weights), squares: plain(this.squares) };
   }
 }

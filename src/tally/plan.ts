@@ -1,6 +1,7 @@
 import type { Need } from '../events/batch';
 import { binRange, columnNames, midpoint, outcomeNames, type Axis } from '../study/axis';
-import { resolveAxis, type Cut, type Study } from '../study/study';
+import { resolveAxis } from '../study/resolve-axis';
+import type { Cut, Study } from '../study/study';
 
 /** What a study asks of the rows of an event file: plain data that a worker can be handed. */
 export interface TallyPlan {

@@ -1,6 +1,6 @@
-import type { Batch, NumberColumn, Reject, TextColumn } from '../events/batch';
+import type { Batch, Column, IdentityColumn, NumberColumn, Reject, TextColumn } from '../events/batch';
 import { InputError } from '../study/input-error';
-import type { Axis, TagAxis } from '../study/axis';
+import type { Axis } from '../study/axis';
 import { cutTests, type CutTest } from './cut';
 import { emptyLedger, type Ledger } from './ledger';
 import type { TallyPlan } from './plan';
@@ -24,6 +24,8 @@ export interface Events {
   identity: { high: Uint32Array; low: Uint32Array; places: Float64Array } | null;
 }
 
+type Fault = Omit<Reject, 'place'>;
+
 /**
  * Takes batches of rows and parts them: cut, rejected, or selected to be binned. A row that cannot be read is
  * rejected; else a row that fails a cut is cut (a missing value satisfies no comparison); else a row that cannot be
@@ -36,6 +38,8 @@ export class Selection {
   readonly runLabels: string[] = [];
   private readonly runCodes = new Map<string, number>();
   private readonly tests: CutTest[];
+  private status = new Uint8Array(0);
+  private pass = new Uint8Array(0);
 
   constructor(
     private readonly plan: TallyPlan,
@@ -47,96 +51,121 @@ export class Selection {
 
   /**
    * Selects the events of one batch and returns them with every rejected row of it, those the reader found included.
-   * Throws `InputError` for a tag that the study does not list; `placeOf` names a row's place in it.
+   * The events may share the arrays of the batch. Throws `InputError` for a tag that the study does not list;
+   * `placeOf` names a row's place in it.
    */
   select(batch: Batch, placeOf: (place: number) => string): { events: Events; rejects: Reject[] } {
-    const { plan, ledger } = this;
+    const { ledger } = this;
     const rejects = [...batch.rejects];
-    const keep = this.applyCuts(batch);
-    const events = emptyEvents(plan, batch.rows);
-    const row = this.rowReader(batch, events, placeOf);
-    for (let i = 0; i < batch.rows; i++) {
-      if (keep && keep[i] === 0) {
-        ledger.cut++;
-        continue;
-      }
-      const fault = row(i, events.rows);
-      if (fault) rejects.push({ place: batch.places[i]!, ...fault });
-      else events.rows++;
-    }
+    const all = this.eventsOf(batch);
+    this.roomFor(batch.rows);
+    const cut = this.applyCuts(batch);
+    const doubtful = this.markUnusable(all, batch.rows);
+    const events = cut + doubtful === 0 ? all : this.keepUsable(batch, all, rejects, placeOf);
     ledger.read += batch.rows + batch.rejects.length;
+    ledger.cut += cut;
     ledger.rejected += rejects.length;
     for (const { reason } of rejects) ledger.reasons[reason] = (ledger.reasons[reason] ?? 0) + 1;
     return { events, rejects };
   }
 
-  private applyCuts(batch: Batch): Uint8Array | null {
-    if (this.tests.length === 0) return null;
-    const keep = new Uint8Array(batch.rows).fill(1);
-    const pass = new Uint8Array(batch.rows);
+  /** Every row of a batch as an event, checked by nobody yet. */
+  private eventsOf(batch: Batch): Events {
+    const { at, trueAxis, recoAxis } = this.plan;
+    const identity = at.event < 0 ? null : (batch.columns[at.event] as IdentityColumn);
+    return {
+      rows: batch.rows,
+      truth: valuesOf(batch.columns[at.true]!, trueAxis),
+      reco: valuesOf(batch.columns[at.reconstructed]!, recoAxis),
+      weight: at.weight < 0 ? null : (batch.columns[at.weight] as NumberColumn).values,
+      run: at.run < 0 ? null : this.runsOf(batch.columns[at.run] as TextColumn),
+      identity: identity && { high: identity.high, low: identity.low, places: batch.places },
+    };
+  }
+
+  private roomFor(rows: number): void {
+    if (this.status.length < rows) {
+      this.status = new Uint8Array(rows);
+      this.pass = new Uint8Array(rows);
+    }
+    this.status.fill(USABLE, 0, rows);
+  }
+
+  /** Marks the rows that fail a cut, and returns how many. */
+  private applyCuts(batch: Batch): number {
+    const { pass, status } = this;
     this.tests.forEach((test, c) => {
       test(batch.columns[this.plan.at.cuts[c]!]!, batch.rows, pass);
       let passed = 0;
       for (let i = 0; i < batch.rows; i++) {
         passed += pass[i]!;
-        keep[i]! &= pass[i]!;
+        if (pass[i] === 0) status[i] = CUT;
       }
       this.cutPassed[c]! += passed;
     });
-    return keep;
+    let cut = 0;
+    if (this.tests.length > 0) for (let i = 0; i < batch.rows; i++) if (status[i] === CUT) cut++;
+    return cut;
   }
 
-  /** A function that checks row `i` and writes it as event `at`, or returns what is wrong with it. */
-  private rowReader(batch: Batch, events: Events, placeOf: (place: number) => string) {
-    const { plan } = this;
-    const { at, needs } = plan;
-    const truth = valuesOf(batch, at.true, plan.trueAxis);
-    const reco = valuesOf(batch, at.reconstructed, plan.recoAxis);
-    const unlisted = (axis: 'true' | 'reconstructed', i: number): InputError => {
-      const column = batch.columns[at[axis]] as TextColumn;
-      return new InputError(
-        placeOf(batch.places[i]!),
-        `tag "${column.labels[column.codes[i]!]}" is not in axes.${axis}.tags`,
-        'list it there, or cut these rows',
-      );
+  /** Marks the rows that pass the cuts and yet may be unusable, one role after the other, and returns how many. */
+  private markUnusable({ truth, reco, weight, run, identity }: Events, rows: number): number {
+    const { status, plan } = this;
+    const tagged = plan.trueAxis.kind === 'tags' || plan.recoAxis.kind === 'tags';
+    let marked = 0;
+    const mark = (i: number): void => {
+      if (status[i] !== USABLE) return;
+      status[i] = DOUBTFUL;
+      marked++;
     };
-    const weight = at.weight < 0 ? null : (batch.columns[at.weight] as NumberColumn).values;
-    const run = at.run < 0 ? null : this.runsOf(batch.columns[at.run] as TextColumn);
-    const identity = at.event < 0 ? null : batch.columns[at.event]!;
-    const fault = (need: number, value: string | null, reason: string) => ({ column: needs[need]!.column, value, reason });
+    for (let i = 0; i < rows; i++) if (!(Math.abs(truth[i]!) < Infinity)) mark(i);
+    if (plan.lostRecorded) {
+      for (let i = 0; i < rows; i++) if (Math.abs(reco[i]!) === Infinity) mark(i);
+    } else {
+      for (let i = 0; i < rows; i++) if (!(Math.abs(reco[i]!) < Infinity)) mark(i);
+    }
+    if (tagged) for (let i = 0; i < rows; i++) if (truth[i] === UNLISTED || reco[i] === UNLISTED) mark(i);
+    if (weight) for (let i = 0; i < rows; i++) if (!isWeight(weight[i]!)) mark(i);
+    if (run) for (let i = 0; i < rows; i++) if (run[i]! < 0) mark(i);
+    if (identity) for (let i = 0; i < rows; i++) if (identity.high[i] === 0 && identity.low[i] === 0) mark(i);
+    return marked;
+  }
 
-    return (i: number, to: number): Omit<Reject, 'place'> | null => {
-      const t = truth[i]!;
-      const r = reco[i]!;
-      if (t !== t && !(plan.countUnmatched && r === r)) return fault(at.true, null, 'no true value');
-      if (t === UNLISTED && plan.trueAxis.kind === 'tags') throw unlisted('true', i);
-      if (r === UNLISTED && plan.recoAxis.kind === 'tags') throw unlisted('reconstructed', i);
-      if (t === Infinity || t === -Infinity) return fault(at.true, String(t), 'true value not finite');
-      if (r !== r && !plan.lostRecorded) return fault(at.reconstructed, null, 'no reconstructed value');
-      if (r === Infinity || r === -Infinity) return fault(at.reconstructed, String(r), 'reconstructed value not finite');
-      if (weight) {
-        const w = weight[i]!;
-        if (w !== w) return fault(at.weight, null, 'no weight');
-        const size = Math.abs(w);
-        if (size > LARGEST_WEIGHT || (size < LEAST_WEIGHT && size > 0)) {
-          return fault(at.weight, String(w), 'weight out of range');
-        }
-        events.weight![to] = w;
-      }
-      if (run) {
-        if (run[i]! < 0) return fault(at.run, null, 'no run label');
-        events.run![to] = run[i]!;
-      }
-      if (identity?.as === 'identity') {
-        if (identity.high[i] === 0 && identity.low[i] === 0) return fault(at.event, null, 'no event identity');
-        events.identity!.high[to] = identity.high[i]!;
-        events.identity!.low[to] = identity.low[i]!;
-        events.identity!.places[to] = batch.places[i]!;
-      }
-      events.truth[to] = t;
-      events.reco[to] = r;
-      return null;
-    };
+  /** Copies the usable rows and says what is wrong with the doubtful ones. */
+  private keepUsable(batch: Batch, all: Events, rejects: Reject[], placeOf: (place: number) => string): Events {
+    const { status } = this;
+    const kept = emptyEvents(all);
+    for (let i = 0; i < batch.rows; i++) {
+      if (status[i] === CUT) continue;
+      const fault = status[i] === DOUBTFUL ? this.faultOf(batch, all, i, placeOf) : null;
+      if (fault) rejects.push({ place: batch.places[i]!, ...fault });
+      else copyEvent(all, i, kept);
+    }
+    return kept;
+  }
+
+  /** What is wrong with a doubtful row; `null` for one that turns out to be usable (counted as unmatched). */
+  private faultOf(batch: Batch, events: Events, i: number, placeOf: (place: number) => string): Fault | null {
+    const { at, needs, countUnmatched, lostRecorded, trueAxis, recoAxis } = this.plan;
+    const { truth, reco, weight, run, identity } = events;
+    const fault = (need: number, value: number | null, reason: string): Fault => ({
+      column: needs[need]!.column,
+      value: value === null || Number.isNaN(value) ? null : String(value),
+      reason,
+    });
+    const [t, r] = [truth[i]!, reco[i]!];
+    if (Number.isNaN(t) && !(countUnmatched && !Number.isNaN(r))) return fault(at.true, t, 'no true value');
+    if (t === UNLISTED && trueAxis.kind === 'tags') throw unlistedTag(batch, at.true, 'true', i, placeOf);
+    if (Math.abs(t) === Infinity) return fault(at.true, t, 'true value not finite');
+    if (Number.isNaN(r) && !lostRecorded) return fault(at.reconstructed, r, 'no reconstructed value');
+    if (r === UNLISTED && recoAxis.kind === 'tags') throw unlistedTag(batch, at.reconstructed, 'reconstructed', i, placeOf);
+    if (Math.abs(r) === Infinity) return fault(at.reconstructed, r, 'reconstructed value not finite');
+    if (weight && !isWeight(weight[i]!)) {
+      return fault(at.weight, weight[i]!, Number.isNaN(weight[i]) ? 'no weight' : 'weight out of range');
+    }
+    if (run && run[i]! < 0) return fault(at.run, null, 'no run label');
+    if (identity && identity.high[i] === 0 && identity.low[i] === 0) return fault(at.event, null, 'no event identity');
+    return null;
   }
 
   private runsOf(column: TextColumn): Int32Array {
@@ -163,29 +192,56 @@ export function tooManyRuns(plan: TallyPlan, most: number): InputError {
   );
 }
 
-function valuesOf(batch: Batch, need: number, axis: Axis): Float64Array {
-  const column = batch.columns[need]!;
-  return axis.kind === 'tags' ? tagIndices(column as TextColumn, axis) : (column as NumberColumn).values;
-}
+/** Where a row stands while its batch is selected. */
+const USABLE = 0;
+const DOUBTFUL = 1;
+const CUT = 2;
 
 /** Marks a tag that the study does not list, until the cuts have had their say. */
 const UNLISTED = -1;
 
-function tagIndices(column: TextColumn, axis: TagAxis): Float64Array {
-  const ofCode = column.labels.map((label) => axis.tags.indexOf(label));
-  return Float64Array.from(column.codes, (code) => (code < 0 ? NaN : ofCode[code]!));
+function valuesOf(column: Column, axis: Axis): Float64Array {
+  if (axis.kind !== 'tags') return (column as NumberColumn).values;
+  const { codes, labels } = column as TextColumn;
+  const ofCode = labels.map((label) => axis.tags.indexOf(label));
+  return Float64Array.from(codes, (code) => (code < 0 ? NaN : ofCode[code]!));
 }
 
-function emptyEvents(plan: TallyPlan, rows: number): Events {
+function unlistedTag(batch: Batch, need: number, axis: string, i: number, placeOf: (place: number) => string): InputError {
+  const { labels, codes } = batch.columns[need] as TextColumn;
+  return new InputError(
+    placeOf(batch.places[i]!),
+    `tag "${labels[codes[i]!]}" is not in axes.${axis}.tags`,
+    'list it there, or cut these rows',
+  );
+}
+
+/** Zero, or of a size whose square is a number. */
+function isWeight(w: number): boolean {
+  const size = Math.abs(w);
+  return size === 0 || (size >= LEAST_WEIGHT && size <= LARGEST_WEIGHT);
+}
+
+/** Room for as many events as there are in `like`, holding none. */
+function emptyEvents({ rows, weight, run, identity }: Events): Events {
   return {
     rows: 0,
     truth: new Float64Array(rows),
     reco: new Float64Array(rows),
-    weight: plan.at.weight < 0 ? null : new Float64Array(rows),
-    run: plan.at.run < 0 ? null : new Int32Array(rows),
-    identity:
-      plan.at.event < 0
-        ? null
-        : { high: new Uint32Array(rows), low: new Uint32Array(rows), places: new Float64Array(rows) },
+    weight: weight && new Float64Array(rows),
+    run: run && new Int32Array(rows),
+    identity: identity && { high: new Uint32Array(rows), low: new Uint32Array(rows), places: new Float64Array(rows) },
   };
+}
+
+function copyEvent(from: Events, i: number, to: Events): void {
+  const at = to.rows++;
+  to.truth[at] = from.truth[i]!;
+  to.reco[at] = from.reco[i]!;
+  if (to.weight) to.weight[at] = from.weight![i]!;
+  if (to.run) to.run[at] = from.run![i]!;
+  if (!to.identity) return;
+  to.identity.high[at] = from.identity!.high[i]!;
+  to.identity.low[at] = from.identity!.low[i]!;
+  to.identity.places[at] = from.identity!.places[i]!;
 }
