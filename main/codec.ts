@@ -40,7 +40,7 @@ export function encode(value: unknown): Uint8Array<ArrayBuffer> {
 /** Arrays of the result are views of `message`'s memory. Throws `TypeError` for bytes that `encode` did not make. */
 export function decode(message: Uint8Array): unknown {
   // A view must start at a multiple of its element size in its buffer: what does not is copied once.
-  const whole = message.byteOffset % ALIGNMENT === 0 ? message : message.slice();
+  const whole = message.byteOffset % ALIGNMENT === 0 ? message : new Uint8Array(message);
   if (whole.byteLength < LENGTH_BYTES) throw new TypeError('message without a header');
   const length = new DataView(whole.buffer, whole.byteOffset).getUint32(0, true);
   if (LENGTH_BYTES + length > whole.byteLength) throw new TypeError('message shorter than its header says');

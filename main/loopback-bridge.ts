@@ -7,6 +7,8 @@ import { decode, encode } from './codec';
  * a browser opens only six connections to one host, and long jobs must not hold them.
  */
 export function loopbackBridge(): Bridge {
+  // The one-time key was used up by loading this page: it need not stay in the address.
+  if (location.search !== '') history.replaceState(null, '', location.pathname);
   const listeners = new Set<(notice: Notice) => void>();
   const waiting = new Map<string, () => void>();
   const done = new Set<string>();

@@ -1,11 +1,10 @@
 import { randomBytes, timingSafeEqual } from 'node:crypto';
 import { createReadStream } from 'node:fs';
-import { readdir } from 'node:fs/promises';
 import { createServer, type IncomingMessage, type Server, type ServerResponse } from 'node:http';
 import type { AddressInfo } from 'node:net';
-import { extname, join, relative, sep } from 'node:path';
 import type { Answer, Notice } from './bridge';
 import { decode, encode } from './codec';
+import { filesUnder, PAGE_HEADERS, typeOf } from './page-files';
 
 /** What carries calls to the session and notices back; `Session` is one. */
 export interface Listener {
@@ -30,42 +29,6 @@ const MOST_BODY = 272 * 2 ** 20;
 const PATIENCE_MS = 250;
 /** Keeps a tunnel from closing a silent stream. */
 const HEARTBEAT_MS = 20_000;
-
-export const CONTENT_SECURITY_POLICY = [
-  "default-src 'none'",
-  "script-src 'self'",
-  "style-src 'self'",
-  // Positions and colours of drawn things are set as style attributes; style sheets come from files alone.
-  "style-src-attr 'unsafe-inline'",
-  "img-src 'self' data: blob:",
-  "font-src 'self'",
-  "connect-src 'self'",
-  "worker-src 'self'",
-  "base-uri 'none'",
-  "form-action 'none'",
-  "frame-ancestors 'none'",
-].join('; ');
-
-const HEADERS = {
-  'content-security-policy': CONTENT_SECURITY_POLICY,
-  'cross-origin-opener-policy': 'same-origin',
-  'cross-origin-embedder-policy': 'require-corp',
-  'cross-origin-resource-policy': 'same-origin',
-  'permissions-policy': 'camera=(), microphone=(), geolocation=(), usb=(), serial=(), hid=()',
-  'referrer-policy': 'no-referrer',
-  'x-content-type-options': 'nosniff',
-  'cache-control': 'no-store',
-};
-
-export const TYPES: Record<string, string> = {
-  '.html': 'text/html; charset=utf-8',
-  '.js': 'text/javascript; charset=utf-8',
-  '.css': 'text/css; charset=utf-8',
-  '.svg': 'image/svg+xml',
-  '.png': 'image/png',
-  '.woff2': 'font/woff2',
-  '.json': 'application/json',
-};
 
 /**
  * Serves the built renderer in `folder` and the bridge to `listener`, on 127.0.0.1 alone. Port 0 takes a free one.
@@ -103,7 +66,7 @@ class Reception {
   }
 
   async receive(request: IncomingMessage, response: ServerResponse): Promise<void> {
-    for (const [name, value] of Object.entries(HEADERS)) response.setHeader(name, value);
+    for (const [name, value] of Object.entries(PAGE_HEADERS)) response.setHeader(name, value);
     try {
       await this.route(request, response);
     } catch (error) {
@@ -124,11 +87,11 @@ class Reception {
     const host = request.headers.host ?? '';
     if (!HOST.test(host)) throw new Refused(403, 'wrong host');
     const url = parsedUrl(request.url ?? '');
-    if (request.method === 'GET' && url.pathname === '/' && url.searchParams.has('key')) {
-      return this.admit(url.searchParams.get('key')!, response);
-    }
-    if (!this.holdsSession(request))
+    if (!this.holdsSession(request)) {
+      const key = request.method === 'GET' && url.pathname === '/' ? url.searchParams.get('key') : null;
+      if (key !== null) return this.admit(key, response);
       throw new Refused(403, 'This window has no session: start Entasis again and use the address it prints.');
+    }
     if (request.method === 'GET' || request.method === 'HEAD') return this.sendFile(request, url.pathname, response);
     if (request.method !== 'POST') throw new Refused(405, 'wrong method');
     if (request.headers.origin !== `http://${host}`) throw new Refused(403, 'wrong origin');
@@ -140,8 +103,10 @@ class Reception {
       throw new Refused(403, 'This address was used before: start Entasis again and use the address it prints.');
     }
     this.keyUsed = true;
-    const cookie = `${this.cookie}=${this.session}; Path=/; HttpOnly; SameSite=Strict`;
-    response.writeHead(303, { location: '/', 'set-cookie': cookie }).end();
+    // No redirect: a browser that was sent here from elsewhere would not bring a strict cookie along. The page takes
+    // the key out of its address itself.
+    response.setHeader('set-cookie', `${this.cookie}=${this.session}; Path=/; HttpOnly; SameSite=Strict`);
+    this.send('/index.html', response);
   }
 
   private holdsSession(request: IncomingMessage): boolean {
@@ -152,10 +117,14 @@ class Reception {
 
   private sendFile(request: IncomingMessage, pathname: string, response: ServerResponse): void {
     if (crossSite(request)) throw new Refused(403, 'wrong origin');
-    const file = this.files.get(pathname === '/' ? '/index.html' : pathname);
+    this.send(pathname === '/' ? '/index.html' : pathname, response, request.method === 'HEAD');
+  }
+
+  private send(pathname: string, response: ServerResponse, headOnly = false): void {
+    const file = this.files.get(pathname);
     if (file === undefined) throw new Refused(404, 'not found');
-    response.writeHead(200, { 'content-type': TYPES[extname(file)] ?? 'application/octet-stream' });
-    if (request.method === 'HEAD') return void response.end();
+    response.writeHead(200, { 'content-type': typeOf(file) });
+    if (headOnly) return void response.end();
     createReadStream(file)
       .on('error', () => response.destroy())
       .pipe(response);
@@ -163,18 +132,23 @@ class Reception {
 
   private async post(request: IncomingMessage, pathname: string, response: ServerResponse): Promise<void> {
     if (pathname === '/notices') return this.openStream(response);
-    const [, verb, name] = /^\/(call|answer)\/([A-Za-z0-9-]{1,64})$/.exec(pathname) ?? [];
-    if (verb === 'answer') return send(response, this.collect(name!));
-    if (verb !== 'call') throw new Refused(404, 'not found');
-    const answer = this.listener.call(name!, decoded(await bodyOf(request)));
+    const ticket = /^\/answer\/([\w-]{1,64})$/.exec(pathname)?.[1];
+    if (ticket !== undefined) return reply(response, this.collect(ticket));
+    const name = /^\/call\/([A-Za-z]{1,64})$/.exec(pathname)?.[1];
+    if (name === undefined) throw new Refused(404, 'not found');
+    return this.answerCall(name, request, response);
+  }
+
+  private async answerCall(name: string, request: IncomingMessage, response: ServerResponse): Promise<void> {
+    const answer = this.listener.call(name, decoded(await bodyOf(request)));
     const first = await Promise.race([answer, later(PATIENCE_MS)]);
-    if (first !== LATE) return send(response, first);
+    if (first !== LATE) return reply(response, first);
     const ticket = secret();
     void answer.then((late) => {
       this.answers.set(ticket, late);
       this.tell({ kind: 'answered', ticket });
     });
-    send(response, { ticket });
+    reply(response, { ticket });
   }
 
   private collect(ticket: string): Answer<unknown> {
@@ -215,7 +189,7 @@ function later(ms: number): Promise<typeof LATE> {
   return new Promise((resolve) => setTimeout(resolve, ms, LATE).unref());
 }
 
-function send(response: ServerResponse, answer: unknown): void {
+function reply(response: ServerResponse, answer: unknown): void {
   response.writeHead(200, { 'content-type': 'application/octet-stream' }).end(encode(answer));
 }
 
@@ -258,17 +232,6 @@ function same(given: string, expected: string): boolean {
   const a = Buffer.from(given);
   const b = Buffer.from(expected);
   return a.length === b.length && timingSafeEqual(a, b);
-}
-
-/** The files that can be served, by their address: a list made once, so that no address can name anything else. */
-export async function filesUnder(folder: string): Promise<Map<string, string>> {
-  const files = new Map<string, string>();
-  for (const entry of await readdir(folder, { recursive: true, withFileTypes: true })) {
-    if (!entry.isFile()) continue;
-    const path = join(entry.parentPath, entry.name);
-    files.set(`/${relative(folder, path).split(sep).join('/')}`, path);
-  }
-  return files;
 }
 
 function listening(server: Server, port: number): Promise<void> {

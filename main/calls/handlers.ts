@@ -2,6 +2,8 @@ import type { CallName, Checked, Notice, Result } from '../bridge';
 import type { Chosen } from '../chosen';
 import type { Jobs } from '../jobs';
 import type { Keepsakes } from '../keepsakes';
+import type { MatrixThread } from '../matrix-thread';
+import type { StudyEvents } from '../study-events';
 
 /** A function for each of some calls, with the checked argument in and the result out. */
 export type Handlers<Name extends CallName> = {
@@ -15,7 +17,7 @@ export interface Desktop {
   setTitle(title: string, edited: boolean): void;
 }
 
-/** The built worker files; see `workersBeside` in `session.ts`. */
+/** The built worker files; see `windowFilesBeside`. */
 export interface WorkerFiles {
   read: URL;
   draw: URL;
@@ -37,6 +39,8 @@ export interface Desk {
   chosen: Chosen;
   jobs: Jobs;
   keepsakes: Keepsakes;
+  events: StudyEvents;
+  matrix: MatrixThread;
   desktop: Desktop | null;
   now: () => number;
   tell: (notice: Notice) => void;

@@ -41,6 +41,7 @@ describe('values cross the bridge as bytes', () => {
     const shifted = new Uint8Array(message.length + 3);
     shifted.set(message, 3);
     expect(decode(shifted.subarray(3))).toStrictEqual({ values: Float64Array.of(1, 2, 3) });
+    expect(decode(Buffer.from(shifted.buffer, 3))).toStrictEqual({ values: Float64Array.of(1, 2, 3) });
   });
 
   it('keeps a view of part of a buffer to that part', () => {

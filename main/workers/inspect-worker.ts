@@ -1,0 +1,4 @@
+import { inspectTask, type InspectCalls } from './inspect-task';
+import { serve } from './serve';
+
+serve<InspectCalls>(inspectTask());

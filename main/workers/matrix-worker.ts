@@ -1,0 +1,4 @@
+import { matrixTask, type MatrixCalls } from './matrix-task';
+import { serve } from './serve';
+
+serve<MatrixCalls>(matrixTask());
