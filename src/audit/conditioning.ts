@@ -32,10 +32,10 @@ export interface ConditioningWatcher extends MatrixWatcher {
 /** The quantile of the noise that statistics.md names. */
 const NOISE_QUANTILE = 0.95;
 
-/** Replicas whose singular values are worked out at the most: the sd behind an interval is then known to 9 %. */
-export const MOST_DECOMPOSED = 60;
-/** Below this the sd would be known to no better than 17 %: such a large matrix has no intervals. */
-export const FEWEST_DECOMPOSED = 18;
+/** Replicas whose singular values are worked out at the most: the sd behind an interval is then known to 11 %. */
+export const MOST_DECOMPOSED = 40;
+/** Below this the sd would be known to no better than 18 %: such a large matrix has no intervals. */
+export const FEWEST_DECOMPOSED = 16;
 /** Multiplications `rows x columns x the smaller of both` that all decompositions may take together, up to a small factor. */
 const DECOMPOSITION_BUDGET = 6.5e7;
 /** The larger side of a matrix that is decomposed at all: beyond, minutes would go by. */

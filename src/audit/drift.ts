@@ -1,4 +1,5 @@
 import { PURPOSE, streamOf } from '../numerics/random';
+import type { Marginal } from '../posterior/marginal';
 import type { Posterior } from '../posterior/posterior';
 import type { Study } from '../study/study';
 import { shapeOf } from '../tally/tally';
@@ -105,22 +106,18 @@ function distanceInterval(
 ): { lower: number; upper: number } {
   const all = pool.reduce((a, b) => a + b, 0);
   const share = run.reduce((a, b) => a + b, 0) / all;
-  const [mine, others] = [
-    { a: 0, b: 0 },
-    { a: 0, b: 0 },
-  ];
+  const mine: Marginal = { a: 0, b: 0, method: 'exact' };
+  const others: Marginal = { a: 0, b: 0, method: 'exact' };
   run.forEach((n, k) => {
     const side = n > share * pool[k]! ? 'a' : 'b';
     mine[side] += n * effective + share * prior[k]!;
     others[side] += Math.max(0, pool[k]! - n) * effective + (1 - share) * prior[k]!;
   });
   const stream = streamOf(study.ensemble.seed, PURPOSE.runDrift, column, 1);
-  const method = 'exact';
-  const draws = new Float64Array(DRAWS).map(() => {
-    return (
-      (1 - share) * Math.abs(betaVariate(stream, { ...mine, method }) - betaVariate(stream, { ...others, method }))
-    );
-  });
+  const draws = new Float64Array(DRAWS);
+  for (let i = 0; i < DRAWS; i++) {
+    draws[i] = (1 - share) * Math.abs(betaVariate(stream, mine) - betaVariate(stream, others));
+  }
   return intervalOfDraws(draws, study.credibility);
 }
 

@@ -1,4 +1,4 @@
-import { multinomialInto } from '../numerics/multinomial-variate';
+import { conditionalsOf, shareOut } from '../numerics/multinomial-variate';
 import type { RandomStream } from '../numerics/random';
 
 /**
@@ -35,8 +35,8 @@ export interface Bootstrap {
   most: number;
 }
 
-/** Twenty exceedances keep the relative error of a p-value near 20 %, and end the search of an unremarkable column soon. */
-export const EXCEEDANCES = 20;
+/** Ten exceedances keep the relative error of a p-value near 30 %, and end the search of an unremarkable column soon. */
+export const EXCEEDANCES = 10;
 
 /** A p-value that is proved to be at most this is given by its bound: drawing could only say "none of so many". */
 export const PROVED = 1e-6;
@@ -161,10 +161,11 @@ function sequentialTest(
 ): { pValue: number; draws: number; expectedDistance: number } {
   const drawn = { ...table, contents: new Float64Array(table.contents.length) };
   const margins = marginsOf(table);
+  const conditionals = conditionalsOf(margins.pool);
   let distances = 0;
   let above = 0;
   for (let draws = 1; draws <= most; draws++) {
-    drawAlike(table, margins, stream, drawn.contents);
+    drawAlike(table, margins, conditionals, stream, drawn.contents);
     const { likelihood, distance } = statisticOf(drawn);
     distances += distance;
     if (likelihood >= observed * (1 - TIE)) above++;
@@ -174,11 +175,17 @@ function sequentialTest(
 }
 
 /** A table under the hypothesis: every group from the pooled shares. */
-function drawAlike(table: GroupTable, { rows, pool, all }: Margins, stream: RandomStream, out: Float64Array): void {
+function drawAlike(
+  table: GroupTable,
+  { rows, pool, all }: Margins,
+  conditionals: Float64Array,
+  stream: RandomStream,
+  out: Float64Array,
+): void {
   const { groups, outcomes, scale } = table;
   for (let g = 0; g < groups; g++) {
     const row = out.subarray(g * outcomes, (g + 1) * outcomes);
-    if (!scale) multinomialInto(stream, rows[g]!, pool, row);
+    if (!scale) shareOut(stream, rows[g]!, conditionals, row);
     else
       for (let k = 0; k < outcomes; k++) row[k] = scale[k]! * stream.poisson((rows[g]! * pool[k]!) / all / scale[k]!);
   }

@@ -41,16 +41,7 @@ export function influenceWatcher(input: AuditInput, reference: ReferenceSpectrum
   if (reason !== null) return { watch: () => undefined, result: () => absent(reason) };
   const { window } = outcomePlaces(input);
   const moments = cellMoments(input.posterior);
-  const precision = moments.variance.map((v, i) => {
-    const m = moments.mean[i]!;
-    return m > 0 && m < 1 ? v / (m * (1 - m)) : 0;
-  });
-  const variance = (matrix: Float64Array): Float64Array =>
-    fold(
-      reference.contents.map((s) => s * s),
-      matrix.map((p, i) => p * (1 - p) * precision[i]!),
-      window,
-    );
+  const weights = variancePerSpread(reference.contents, moments);
   const draws = {
     folded: window.map(() => new Float64Array(replicas)),
     variance: window.map(() => new Float64Array(replicas)),
@@ -59,11 +50,40 @@ export function influenceWatcher(input: AuditInput, reference: ReferenceSpectrum
   return {
     watch: (matrix) => {
       fold(reference.contents, matrix, window).forEach((mu, i) => (draws.folded[i]![watched] = mu));
-      variance(matrix).forEach((v, i) => (draws.variance[i]![watched] = v));
+      varianceAt(matrix, weights, input.posterior.outcomes, window).forEach(
+        (v, i) => (draws.variance[i]![watched] = v),
+      );
       watched++;
     },
     result: () => influenceOf(input, reference, moments, draws),
   };
+}
+
+interface Moments {
+  mean: Float64Array;
+  variance: Float64Array;
+}
+
+/** `s_j^2 Var / (m (1 - m))` of every cell: what makes a variance of `p (1 - p)`. */
+function variancePerSpread(contents: Float64Array, { mean, variance }: Moments): Float64Array {
+  const outcomes = mean.length / contents.length;
+  return variance.map((v, i) => {
+    const s = contents[Math.floor(i / outcomes)]!;
+    const m = mean[i]!;
+    return m > 0 && m < 1 ? (s * s * v) / (m * (1 - m)) : 0;
+  });
+}
+
+/** `sum_j weight p (1 - p)` of each bin. */
+function varianceAt(matrix: Float64Array, weights: Float64Array, outcomes: number, window: number[]): Float64Array {
+  const sum = new Float64Array(window.length);
+  for (let from = 0; from < matrix.length; from += outcomes) {
+    for (let i = 0; i < window.length; i++) {
+      const at = from + window[i]!;
+      sum[i]! += weights[at]! * matrix[at]! * (1 - matrix[at]!);
+    }
+  }
+  return sum;
 }
 
 function absent(reason: string): Influence {
@@ -77,12 +97,7 @@ interface Draws {
   variance: Float64Array[];
 }
 
-function influenceOf(
-  input: AuditInput,
-  { contents }: ReferenceSpectrum,
-  moments: { mean: Float64Array; variance: Float64Array },
-  draws: Draws,
-): Influence {
+function influenceOf(input: AuditInput, { contents }: ReferenceSpectrum, moments: Moments, draws: Draws): Influence {
   const { window } = outcomePlaces(input);
   const bins = window.map((k) => input.tally.outcomeNames[k]!);
   const folded = fold(contents, moments.mean, window);

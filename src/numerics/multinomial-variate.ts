@@ -3,23 +3,35 @@ import type { RandomStream } from './random';
 
 /**
  * Fills `out` with a multinomial variate: `trials` shared out with probabilities proportional to `weights` (finite, none
- * negative, of `out`'s length). Cells of weight 0 get nothing. By conditional binomials, cell after cell.
+ * negative, of `out`'s length). Cells of weight 0 get nothing.
  * Throws `RangeError` where there are trials but no weight.
  */
 export function multinomialInto(stream: RandomStream, trials: number, weights: Float64Array, out: Float64Array): void {
-  let last = weights.length - 1;
-  while (last >= 0 && !(weights[last]! > 0)) last--;
-  if (last < 0 && trials > 0) throw new RangeError('trials to share out, but every weight is 0');
-  let weight = 0;
-  for (let i = 0; i <= last; i++) weight += weights[i]!;
-  let left = trials;
-  out.fill(0);
-  for (let i = 0; i < last && left > 0; i++) {
-    if (!(weights[i]! > 0)) continue;
-    out[i] = binomialVariate(stream, left, weights[i]! / weight);
-    left -= out[i]!;
-    weight -= weights[i]!;
+  const conditionals = conditionalsOf(weights);
+  if (trials > 0 && !conditionals.includes(1)) throw new RangeError('trials to share out, but every weight is 0');
+  shareOut(stream, trials, conditionals, out);
+}
+
+/**
+ * Probability of each cell given that no cell before it was hit. The last cell of any weight has 1: rounding cannot lose a
+ * trial. All 0 where every weight is.
+ */
+export function conditionalsOf(weights: Float64Array): Float64Array {
+  const conditionals = new Float64Array(weights.length);
+  let rest = 0;
+  for (let i = weights.length - 1; i >= 0; i--) {
+    rest += weights[i]!;
+    if (weights[i]! > 0) conditionals[i] = weights[i]! / rest;
   }
-  // The rest goes to the last cell that can have it: rounding in `weight` cannot lose a trial.
-  if (last >= 0) out[last] = left;
+  return conditionals;
+}
+
+/** `multinomialInto` for weights given by their `conditionalsOf`: one binomial a cell until no trial is left. */
+export function shareOut(stream: RandomStream, trials: number, conditionals: Float64Array, out: Float64Array): void {
+  let left = trials;
+  for (let i = 0; i < conditionals.length; i++) {
+    const hits = left > 0 && conditionals[i]! > 0 ? binomialVariate(stream, left, conditionals[i]!) : 0;
+    out[i] = hits;
+    left -= hits;
+  }
 }
