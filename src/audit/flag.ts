@@ -1,24 +1,27 @@
 /** The three answers of a limit; see statistics.md 6. */
 export type FlagState = 'flagged' | 'undecided' | 'clear';
 
-export type FlagId =
-  | 'empty'
-  | 'thin'
-  | 'prior-led'
-  | 'lossy'
-  | 'spill-below'
-  | 'spill-above'
-  | 'feed-in'
-  | 'unstable'
-  | 'impure'
-  | 'non-monotone'
-  | 'slope-bias'
-  | 'run-drift'
-  | 'single-event'
-  | 'negative-weight'
-  | 'duplicate'
-  | 'ill-conditioned'
-  | 'matrix-limited';
+/** Every flag, in the order in which they are listed. */
+export const FLAG_IDS = [
+  'empty',
+  'thin',
+  'prior-led',
+  'lossy',
+  'spill-below',
+  'spill-above',
+  'feed-in',
+  'unstable',
+  'impure',
+  'non-monotone',
+  'slope-bias',
+  'run-drift',
+  'single-event',
+  'negative-weight',
+  'duplicate',
+  'ill-conditioned',
+  'matrix-limited',
+] as const;
+export type FlagId = (typeof FLAG_IDS)[number];
 
 /** One answer of the audit: of one measure at one place. `clear` ones are listed too. */
 export interface Flag {

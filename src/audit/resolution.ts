@@ -1,48 +1,59 @@
-import { PURPOSE, streamOf, type RandomStream } from '../numerics/random';
 import { columnMoments } from '../posterior/share-moments';
-import type { NumericAxis } from '../study/axis';
-import type { AuditInput } from './audit-input';
+import { binRange, type NumericAxis } from '../study/axis';
+import { outcomePlaces, type AuditInput } from './audit-input';
 import { intervalOfDraws } from './draws';
 import type { Findings } from './findings';
-import { auditReplicas } from './matrix-draws';
+import type { MatrixWatcher } from './matrix-draws';
 import { listMeasure, type Reading } from './measure';
-import {
-  differences,
-  NO_CENTRE,
-  NOTHING_IN_WINDOW,
-  whyNoDifference,
-  windowResponse,
-  type WindowResponse,
-} from './window-response';
+import { differences, NO_CENTRE, NOTHING_IN_WINDOW, whyNoDifference, windowResponse } from './window-response';
 
 /** The central part of a response whose half-width is its resolution: that of a normal law within one sd. */
 const CENTRAL = 0.6826894921370859;
 
-/**
- * Resolution of every column: half the width of the central 68.3 % of `r - t` over the window (`r / t - 1` on a log true
- * axis), from bin contents spread evenly inside each bin. The value is that of the mean response; interval from draws of
- * the column's posterior. Never much below the bin width. It has no limit and so no flag.
- */
-export function auditResolution(input: AuditInput): Findings {
-  const reason = whyNoDifference(input);
-  if (reason !== null) return { columns: { resolution: { value: null, reason } }, flags: [] };
-  const [trueAxis, { edges }] = [input.trueAxis as NumericAxis, input.recoAxis as NumericAxis];
-  const readings = input.tally.columnNames.map((_, j) => resolutionReading(input, j, differences(trueAxis, j, edges)));
-  return { columns: { resolution: listMeasure(input.tally.columnNames, readings) }, flags: [] };
+export interface ResolutionWatcher extends MatrixWatcher {
+  result(): Findings;
 }
 
-function resolutionReading(input: AuditInput, j: number, edges: Float64Array | null): Reading {
-  if (!edges) return { reason: NO_CENTRE };
-  const response = windowResponse(input, j);
-  if (!response) return { reason: NOTHING_IN_WINDOW };
-  const value = centralHalfWidth(columnMoments(response.shape, response.scale).mean, edges);
-  const stream = streamOf(input.study.ensemble.seed, PURPOSE.resolution, j, 0);
-  const contents = new Float64Array(response.shape.length);
-  const draws = new Float64Array(auditReplicas(input.posterior)).map(() => {
-    drawContents(stream, response, contents);
-    return centralHalfWidth(contents, edges);
+/**
+ * Resolution of every column: half the width of the central 68.3 % of `r - t` over the window (`r / t - 1` on a log true
+ * axis), from bin contents spread evenly inside each bin. The value is that of the mean response, the interval that of the
+ * replicas watched. Never much below the bin width. It has no limit and so no flag.
+ */
+export function resolutionWatcher(input: AuditInput, replicas: number): ResolutionWatcher {
+  const reason = whyNoDifference(input);
+  if (reason !== null) {
+    return {
+      watch: () => undefined,
+      result: () => ({ columns: { resolution: { value: null, reason } }, flags: [] }),
+    };
+  }
+  const [trueAxis, { edges }] = [input.trueAxis as NumericAxis, input.recoAxis as NumericAxis];
+  const offsets = input.tally.columnNames.map((_, j) => differences(trueAxis, j, edges));
+  const { window } = outcomePlaces(input);
+  const { first, end } = binRange(trueAxis);
+  const draws = offsets.map((_, j) => new Float64Array(j >= first && j < end ? replicas : 0));
+  let watched = 0;
+  return {
+    watch: (matrix) => {
+      for (let j = first; j < end; j++) {
+        const from = j * input.posterior.outcomes + window[0]!;
+        draws[j]![watched] = centralHalfWidth(matrix.subarray(from, from + window.length), offsets[j]!);
+      }
+      watched++;
+    },
+    result: () => resolutionOf(input, offsets, draws),
+  };
+}
+
+function resolutionOf(input: AuditInput, offsets: (Float64Array | null)[], draws: Float64Array[]): Findings {
+  const readings = offsets.map((edges, j): Reading => {
+    if (!edges) return { reason: NO_CENTRE };
+    const response = windowResponse(input, j);
+    if (!response) return { reason: NOTHING_IN_WINDOW };
+    const value = centralHalfWidth(columnMoments(response.shape, response.scale).mean, edges);
+    return { value, ...intervalOfDraws(draws[j]!, input.study.credibility) };
   });
-  return { value, ...intervalOfDraws(draws, input.study.credibility) };
+  return { columns: { resolution: listMeasure(input.tally.columnNames, readings) }, flags: [] };
 }
 
 /** Half the distance between the two quantiles of binned content that hold `CENTRAL` of it between them. */
@@ -61,15 +72,4 @@ function quantileOfBinned(contents: Float64Array, edges: Float64Array, content: 
     below += contents[k]!;
   }
   return edges[edges.length - 1]!;
-}
-
-/** Gamma variates in proportion to a draw of the response; again where tiny shapes make all of them underflow. */
-function drawContents(stream: RandomStream, { shape, scale }: WindowResponse, out: Float64Array): void {
-  let total = 0;
-  while (!(total > 0)) {
-    for (let k = 0; k < shape.length; k++) {
-      out[k] = shape[k]! > 0 ? stream.gamma(shape[k]!) * (scale ? scale[k]! : 1) : 0;
-      total += out[k]!;
-    }
-  }
 }

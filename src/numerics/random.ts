@@ -14,7 +14,6 @@ export const PURPOSE = {
   test: 6,
   slopeBias: 7,
   compare: 8,
-  resolution: 9,
 } as const;
 export type Purpose = (typeof PURPOSE)[keyof typeof PURPOSE];
 

@@ -4,6 +4,8 @@ import type { Flag, FlagId } from '../../../src/audit/flag';
 import { posteriorOf } from '../../../src/posterior/posterior';
 import { priorOf } from '../../../src/posterior/prior';
 import { columnNames, outcomeNames } from '../../../src/study/axis';
+import type { MatrixSampler } from '../../../src/audit/matrix-draws';
+import { drawBlock, planEnsemble } from '../../../src/ensemble/draw';
 import { parseStudy, resolveAxis, STUDY_SCHEMA, type StudyInput } from '../../../src/study/study';
 import { tallyOf, type CampaignCells } from './invented-campaign';
 
@@ -40,3 +42,9 @@ export function flagOf(audit: Audit, id: FlagId, place: string | null): Flag {
 export function auditMade(cells: Omit<CampaignCells, 'columnNames' | 'outcomeNames'>, given: Given = {}): Audit {
   return auditOf(inputOf(cells, given));
 }
+
+/** The ensemble's own sampler, as the processes hand it to the audit. */
+export const sampler: MatrixSampler = (from, seed) => {
+  const plan = planEnsemble(from);
+  return (block, replicas, out) => drawBlock(plan, seed, block, replicas, out);
+};
