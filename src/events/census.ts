@@ -1,6 +1,7 @@
 import { MOST_LABELS, type ColumnFacts } from './batch';
 import { isMissing, parseNumber } from './number';
 import { Dictionary } from './dictionary';
+import { jsonNumber } from './object-parser';
 
 /** Counts what one column holds: missing and non-finite values, range, labels. */
 export class Census {
@@ -33,6 +34,18 @@ export class Census {
     else this.addFinite(value);
   }
 
+  /** Counts a value of JSON. */
+  addJson(value: unknown): void {
+    const number = jsonNumber(value);
+    if (number !== number) this.missing += 1;
+    else {
+      if (this.labels !== null && typeof value === 'object') this.labels = null;
+      if (this.labels !== null) this.keep(this.labels.codeOfText(String(value)));
+      if (number === null) this.isNumber = false;
+      else this.addFinite(number);
+    }
+  }
+
   /** Counts a number; `NaN` is missing. */
   addNumber(value: number): void {
     if (value !== value) this.missing += 1;
@@ -56,9 +69,11 @@ export class Census {
   }
 
   private addLabel(bytes: Uint8Array, from: number, to: number): void {
-    if (this.labels === null) return;
-    this.labels.code(bytes, from, to);
-    if (this.labels.labels.length > MOST_LABELS) this.labels = null;
+    if (this.labels !== null) this.keep(this.labels.code(bytes, from, to));
+  }
+
+  private keep(code: number): void {
+    if (code >= MOST_LABELS) this.labels = null;
   }
 }
 

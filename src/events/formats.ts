@@ -1,25 +1,54 @@
 import type { Reader } from './batch';
 import { firstBytes } from './byte-source';
 import { csv } from './csv';
+import { ndjson } from './ndjson';
+import { compressionOf, openBytes } from './open-bytes';
 import { parquet } from './parquet';
 
 /** All formats of event files that can be read. */
-export const READERS: readonly Reader[] = [csv, parquet];
+export const READERS: readonly Reader[] = [csv, ndjson, parquet];
 
-/** First bytes by which a format is known. */
-const MAGIC: [Reader, string][] = [[parquet, 'PAR1']];
+/** First bytes by which a binary format is known, as Latin-1. */
+const MAGIC: [string, Reader][] = [['PAR1', parquet]];
+const LONGEST_MAGIC = 16;
 
-/** The reader of a file, by its content. What no other format claims is taken for a delimited table. */
+/** Names that tell a format of text, compressed or not. */
+const ENDINGS: [RegExp, Reader][] = [
+  [/\.(ndjson|jsonl|json)(\.gz|\.zst|\.zstd)?$/i, ndjson],
+  [/\.(csv|tsv)(\.gz|\.zst|\.zstd)?$/i, csv],
+];
+
+/**
+ * The reader of a file: a binary format by its content, a text by its name's ending, else by its first sign. Throws
+ * `InputError` where the file cannot be read.
+ */
 export async function readerFor(path: string): Promise<Reader> {
   const first = Buffer.from(firstBytes(path, path, LONGEST_MAGIC)).toString('latin1');
-  return MAGIC.find(([, magic]) => first.startsWith(magic))?.[0] ?? csv;
+  const binary = MAGIC.find(([magic]) => first.startsWith(magic));
+  if (binary) return binary[1];
+  const named = ENDINGS.find(([ending]) => ending.test(path));
+  if (named) return named[1];
+  return (await firstSign(path)) === '{' ? ndjson : csv;
 }
-
-const LONGEST_MAGIC = 16;
 
 /** The reader of a format that `readerFor` found before. */
 export function readerOfFormat(format: string): Reader {
   const reader = READERS.find((each) => each.format === format);
   if (reader === undefined) throw new Error(`no reader of format ${format}`);
   return reader;
+}
+
+/** Enough to get past blank lines at the top of a text. */
+const TOP = 4096;
+
+/** The first character of a text, decompressed, that is no blank; empty where there is none. */
+async function firstSign(path: string): Promise<string> {
+  const source = openBytes(path, path, compressionOf(path, path));
+  try {
+    const bytes = Buffer.alloc(TOP);
+    const got = await source.fill(bytes);
+    return bytes.toString('utf8', 0, got).trimStart().charAt(0);
+  } finally {
+    source.close();
+  }
 }

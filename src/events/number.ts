@@ -175,6 +175,15 @@ const INFINITY = lowerCase('infinity');
 const NULL = lowerCase('null');
 const NAN = lowerCase('nan');
 
+const encoder = new TextEncoder();
+
+/** The number that a text stands for, blanks around it set aside; `NaN` where it is missing, `null` where it is none. */
+export function numberOf(text: string): number | null {
+  const bytes = encoder.encode(text.trim());
+  const value = parseNumber(bytes, 0, bytes.length);
+  return value === value || isMissing(bytes, 0, bytes.length) ? value : null;
+}
+
 /** True for what stands for a missing value: nothing at all, `null`, or `nan` with or without a sign; in any case. */
 export function isMissing(bytes: Uint8Array, from: number, to: number): boolean {
   if (from === to) return true;

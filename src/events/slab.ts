@@ -1,7 +1,7 @@
 import type { Need } from './batch';
 import type { BatchBuilder } from './batch-builder';
 import { identifyNumber, identifyText } from './identity';
-import { isMissing, parseNumber } from './number';
+import { numberOf } from './number';
 
 /**
  * The values of one need in a stretch of rows, as a binary format holds them: numbers, or texts, or numbers with texts
@@ -96,13 +96,4 @@ export class SlabTaker {
       else identifyText(text(k), high, low, k + shift);
     }
   }
-}
-
-const encoder = new TextEncoder();
-
-/** The number that a text stands for, blanks around it set aside; `NaN` where it is missing, `null` where it is none. */
-function numberOf(text: string): number | null {
-  const bytes = encoder.encode(text.trim());
-  const value = parseNumber(bytes, 0, bytes.length);
-  return value === value || isMissing(bytes, 0, bytes.length) ? value : null;
 }

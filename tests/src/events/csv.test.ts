@@ -3,7 +3,8 @@ import { readFileSync } from 'node:fs';
 import { gzipSync } from 'node:zlib';
 import { describe, expect, test } from 'vitest';
 import { BATCH_ROWS } from '../../../src/events/batch-builder';
-import { csv, LEAST_PIECE } from '../../../src/events/csv';
+import { csv } from '../../../src/events/csv';
+import { LEAST_PIECE } from '../../../src/events/line-units';
 import { LONGEST_LINE } from '../../../src/events/lines';
 import { InputError } from '../../../src/study/input-error';
 import { fileOf, gather, needsOf, readAll, type Gathered } from './gather';
@@ -286,7 +287,7 @@ describe('a file that cannot be read as a table is refused in one line', () => {
 
   test('when the name of a needed column stands twice', async () => {
     expect(await message('t,r,t\n1,2,3\n')).toBe(
-      'events: two columns are named "t", number 1 and number 3: rename one of them in the header',
+      'events: two columns are named "t", number 1 and number 3: rename one of them',
     );
     expect((await read('t,r,x,x\n1,2,3,4\n')).rows).toEqual([[2, 1, 2]]);
   });
