@@ -2,22 +2,42 @@ import { resolve } from 'node:path';
 import { svelte } from '@sveltejs/vite-plugin-svelte';
 import { defineConfig } from 'electron-vite';
 
-const here = import.meta.dirname;
+const at = (path: string): string => resolve(import.meta.dirname, path);
+const worker = (name: string): string => at(`main/workers/${name}-worker.ts`);
 
 export default defineConfig({
   main: {
     build: {
       target: 'node20',
-      // Bundled, because a start of the command line would else read hundreds of small files.
-      externalizeDeps: { exclude: ['zod', 'commander', 'tinyglobby', 'arquero', '@uwdata/flechette', 'acorn', 'fdir', 'picomatch'] },
       rolldownOptions: {
         input: {
-          command: resolve(here, 'main/command.ts'),
-          'read-worker': resolve(here, 'main/workers/read-worker.ts'),
-          'draw-worker': resolve(here, 'main/workers/draw-worker.ts'),
+          command: at('main/command.ts'),
+          desktop: at('main/desktop.ts'),
+          'read-worker': worker('read'),
+          'draw-worker': worker('draw'),
+          'matrix-worker': worker('matrix'),
+          'inspect-worker': worker('inspect'),
         },
       },
     },
   },
+  preload: {
+    build: {
+      // A sandboxed preload script is CommonJS and can require no package.
+      externalizeDeps: false,
+      rolldownOptions: {
+        input: { preload: at('main/preload.ts') },
+        output: { format: 'cjs', entryFileNames: '[name].cjs' },
+      },
+    },
+  },
+  renderer: {
+    root: at('renderer'),
+    plugins: [svelte()],
+    build: {
+      // The page's policy takes files only: nothing small is put in line.
+      assetsInlineLimit: 0,
+      rolldownOptions: { input: at('renderer/index.html') },
+    },
+  },
 });
-void svelte;
