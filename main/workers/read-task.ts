@@ -102,7 +102,8 @@ class Reading {
       for await (const batch of reader.read(unit, plan.needs)) {
         const { events, rejects } = this.selection.select(batch, placeOf);
         this.sums.add(events, this.selection.runLabels);
-        if (events.identity) this.spill!.add(events.identity, events.rows, ordinal);
+        const identities = this.selection.identitiesOf(events);
+        if (identities) this.spill!.add(identities, events.rows, ordinal);
         if (rejects.length > 0) rejectsFile.append(rejects);
         this.keep(events);
         done.placesPassed = batch.placesPassed;

@@ -3,7 +3,7 @@ import { join } from 'node:path';
 import type { Events } from './selection';
 import type { Duplicates } from './tally';
 
-/** Identities are parted by the top bits of their key, so that one part at a time is held in memory. */
+/** Identities are parted by a hash of their key, so that one part at a time is held in memory. */
 const BUCKET_BITS = 6;
 const BUCKETS = 1 << BUCKET_BITS;
 /** One record: key high, key low, unit (or file), place. */
@@ -30,7 +30,7 @@ export class IdentitySpill {
   }
 
   addRecord(high: number, low: number, unit: number, place: number): void {
-    const bucket = high >>> (32 - BUCKET_BITS);
+    const bucket = bucketOf(high, low);
     const buffer = this.buffers[bucket]!;
     const at = this.fill[bucket]!;
     buffer[at] = high;
@@ -59,11 +59,16 @@ export class IdentitySpill {
   }
 }
 
+/** Keys of integers differ in their low bits alone: a multiplicative hash (Knuth, vol. 3, 6.4) spreads them over the buckets. */
+function bucketOf(high: number, low: number): number {
+  return Math.imul(Math.imul(high, 0x85ebca6b) ^ low, 0x9e3779b1) >>> (32 - BUCKET_BITS);
+}
+
 function bucketPath(folder: string, writer: string, bucket: number): string {
   return join(folder, `identities-${writer}-${bucket}.bin`);
 }
 
-/** The records of the spills of several writers, bucket by bucket in the order of their keys; records unsorted. */
+/** The records of the spills of several writers, bucket by bucket; those of a bucket in no particular order. */
 export function* spilledBuckets(folder: string, writers: readonly string[]): Generator<Uint32Array> {
   for (let bucket = 0; bucket < BUCKETS; bucket++) {
     const paths = writers.map((writer) => bucketPath(folder, writer, bucket)).filter((path) => existsSync(path));

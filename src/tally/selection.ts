@@ -1,4 +1,5 @@
 import type { Batch, Column, IdentityColumn, NumberColumn, Reject, TextColumn } from '../events/batch';
+import { identifyText } from '../events/identity';
 import { InputError } from '../study/input-error';
 import type { Axis } from '../study/axis';
 import { cutTests, type CutTest } from './cut';
@@ -37,6 +38,7 @@ export class Selection {
   readonly cutPassed: Float64Array;
   readonly runLabels: string[] = [];
   private readonly runCodes = new Map<string, number>();
+  private readonly keysOfRuns: { high: number; low: number }[] = [];
   private readonly tests: CutTest[];
   private status = new Uint8Array(0);
   private pass = new Uint8Array(0);
@@ -173,6 +175,23 @@ export class Selection {
     return column.codes.map((code) => (code < 0 ? -1 : codes[code]!));
   }
 
+  /**
+   * The identities of selected events, told apart by run where runs are read: event numbers often begin anew with every
+   * run (common practice), and only one that repeats within its run is a duplicate.
+   */
+  identitiesOf({ identity, run, rows }: Events): Events['identity'] {
+    if (!identity || !run) return identity;
+    const { keysOfRuns } = this;
+    while (keysOfRuns.length < this.runLabels.length) keysOfRuns.push(keyOf(this.runLabels[keysOfRuns.length]!));
+    const [high, low] = [new Uint32Array(rows), new Uint32Array(rows)];
+    for (let i = 0; i < rows; i++) {
+      const key = keysOfRuns[run[i]!]!;
+      high[i] = identity.high[i]! ^ key.high;
+      low[i] = identity.low[i]! ^ key.low;
+    }
+    return { high, low, places: identity.places };
+  }
+
   private runCode(label: string): number {
     const known = this.runCodes.get(label);
     if (known !== undefined) return known;
@@ -214,6 +233,12 @@ function unlistedTag(batch: Batch, need: number, axis: string, i: number, placeO
     `tag "${labels[codes[i]!]}" is not in axes.${axis}.tags`,
     'list it there, or cut these rows',
   );
+}
+
+function keyOf(label: string): { high: number; low: number } {
+  const [high, low] = [new Uint32Array(1), new Uint32Array(1)];
+  identifyText(`run ${label}`, high, low, 0);
+  return { high: high[0]!, low: low[0]! };
 }
 
 /** Zero, or of a size whose square is a number. */
