@@ -61,6 +61,30 @@ def neighbour_prior(counts, true_edges, reco_edges, log):
     return means, strengths, prior, best([i for i in means if counts[i].sum() > 0])
 
 
+def sensitivity(counts, neighbours, own):
+    """Means and sds under four priors, and the largest change of a mean in units of the sd under `own`."""
+    outcomes = counts.shape[1]
+    priors = {
+        "flat": np.ones_like(counts),
+        "Jeffreys": np.full_like(counts, 0.5),
+        "shared total": np.full_like(counts, 1 / outcomes),
+        "neighbours": neighbours,
+    }
+    found = {}
+    for name, prior in priors.items():
+        a = counts + prior
+        total = a.sum(axis=1, keepdims=True)
+        found[name] = (a / total, np.sqrt(a * (total - a) / (total**2 * (total + 1))))
+    changes = {name: np.abs(mean - found[own][0]) / found[own][1] for name, (mean, _) in found.items()}
+    most = max(changes, key=lambda name: changes[name].max())
+    place = np.unravel_index(changes[most].argmax(), counts.shape)
+    return {
+        "own": own,
+        "priors": {name: {"mean": m.ravel().tolist(), "sd": s.ravel().tolist()} for name, (m, s) in found.items()},
+        "largest": {"prior": most, "column": int(place[0]), "outcome": int(place[1]), "inSd": changes[most].max()},
+    }
+
+
 def campaign(true_edges, reco_edges, per_column, log):
     bins, outcomes = len(true_edges) - 1, len(reco_edges) + 2
     counts = np.zeros((bins + 2, outcomes))
@@ -94,6 +118,7 @@ for name, (true_edges, reco_edges, per_column, log) in CASES.items():
             "strengths": strengths.tolist(),
             "strength": overall,
             "prior": prior.tolist(),
+            "sensitivity": sensitivity(counts, prior, "Jeffreys"),
             "curve": {"kappa": kappas.tolist(), "logEvidence": curve},
         }
     )
