@@ -5,6 +5,7 @@ export default defineConfig({
     include: ['tests/**/*.test.ts'],
     reporters: ['default', './tests/closing-line.ts'],
     testTimeout: 60_000,
+    hookTimeout: 120_000,
     maxWorkers: 2,
   },
 });
