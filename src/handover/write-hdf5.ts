@@ -33,7 +33,7 @@ export async function writeHdf5(bundle: Bundle, options: HandoverOptions): Promi
     const file = new hdf5.File(path!, 'w');
     try {
       writeDocuments(file, bundle);
-      for (const name of ['tally', 'posterior', 'axes']) file.create_group(name);
+      for (const name of groupsOf(bundle)) file.create_group(name);
       writeAxis(file, 'axes/true', bundle.axes.true);
       writeAxis(file, 'axes/reconstructed', bundle.axes.reconstructed);
       for (const name of bundle.arrays.keys()) {
@@ -56,6 +56,11 @@ function writeDocuments(file: File, bundle: Bundle): void {
   for (const name of ['manifest.json', 'study.json']) {
     file.create_dataset({ name, data: readFileSync(join(bundle.folder, name), 'utf8'), dtype: TEXT });
   }
+}
+
+function groupsOf(bundle: Bundle): Set<string> {
+  const folders = [...bundle.arrays.keys()].filter((name) => name.includes('/')).map((name) => name.split('/')[0]!);
+  return new Set([...folders, 'axes']);
 }
 
 function writeAxis(file: File, name: string, axis: Axis): void {
