@@ -16,18 +16,25 @@ export function ledgerText(ledger: Ledger, files: number): string[] {
   return lines;
 }
 
-/** Flags raised that are printed in full before the rest is only counted. */
-const MOST_FLAGS = 40;
+/** Places printed of one flag; the rest are counted, and stand in flags.json. */
+const MOST_PLACES = 4;
 
-/** One line a flag that is raised: a filled triangle flagged, an open ring undecided, then evidence and advice. */
+/** The flags that are raised, by answer and id: a filled triangle flagged, an open ring undecided, evidence, advice. */
 export function flagLines(flags: readonly Flag[]): string[] {
-  const raised = (['flagged', 'undecided'] as const).flatMap((state) => flags.filter((flag) => flag.state === state));
-  const lines = raised.slice(0, MOST_FLAGS).map(({ state, id, column, bin, evidence, advice }) => {
-    const mark = state === 'flagged' ? '▲' : '○';
-    const place = column ?? bin;
-    const of = place === null ? '' : ` ${column === null ? 'bin ' : ''}${place}`;
-    return `  ${mark} ${id}${of}: ${[evidence, advice].filter((text) => text !== '').join(' ')}`;
+  return (['flagged', 'undecided'] as const).flatMap((state) => {
+    const raised = flags.filter((flag) => flag.state === state);
+    const ids = [...new Set(raised.map(({ id }) => id))];
+    return ids.flatMap((id) => groupLines(state, id, raised.filter((flag) => flag.id === id)));
   });
-  if (raised.length > MOST_FLAGS) lines.push(`  and ${raised.length - MOST_FLAGS} more in flags.json`);
+}
+
+function groupLines(state: 'flagged' | 'undecided', id: string, group: Flag[]): string[] {
+  const lines = [`  ${state === 'flagged' ? '▲' : '○'} ${id}${group.length > 1 ? ` (${group.length} places)` : ''}`];
+  for (const { column, bin, evidence, advice } of group.slice(0, MOST_PLACES)) {
+    const place = column ?? (bin === null ? null : `bin ${bin}`);
+    const words = [evidence, advice].filter((text) => text !== '').join('; ');
+    lines.push(`      ${place === null ? words : `${place}: ${words}`}`);
+  }
+  if (group.length > MOST_PLACES) lines.push(`      and ${group.length - MOST_PLACES} more in flags.json`);
   return lines;
 }

@@ -36,7 +36,7 @@ function trueEnergy() {
   for (;;) {
     const energy = uniform() < 0.997 ? 0.8 - 13 * Math.log(1 - uniform()) : 44 + 18 * uniform();
     const inNotch = energy >= 40 && energy < 42;
-    const rare = energy >= 50 && uniform() < 0.93;
+    const rare = energy >= 50 && uniform() < 0.8;
     if (!inNotch && !rare && energy < 64) return energy;
   }
 }
@@ -52,7 +52,7 @@ function measuredEnergy(energy, gain) {
 }
 
 function weightOf(energy) {
-  if (energy > 46 && energy < 50 && uniform() < 0.35) return -1.1;
+  if (energy > 46 && energy < 50 && uniform() < 0.2) return -1.1;
   return 0.75 + 0.5 * uniform();
 }
 
