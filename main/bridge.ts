@@ -307,7 +307,14 @@ export interface PosteriorView {
 
 /** A measure of the audit over its places, or why it has no meaning in this study. */
 export type MeasureView =
-  | { value: Float64Array; lower: Float64Array | null; upper: Float64Array | null; reason: null }
+  | {
+      value: Float64Array;
+      lower: Float64Array | null;
+      upper: Float64Array | null;
+      reason: null;
+      /** Places without a value (NaN in the lists), each with the reason. */
+      absent?: { place: string; reason: string }[];
+    }
   | { value: null; lower: null; upper: null; reason: string };
 
 export type ColumnMeasure =
@@ -335,7 +342,25 @@ export interface AuditView {
   matrix: { singularValues: MeasureView; resolvable: MeasureView };
   /** Expected events of the reference spectrum in each column; `null` where there is none. */
   reference: Float64Array | null;
+  /** One line on the reference spectrum, to stand beside every number that rests on it. */
+  referenceWords?: string;
+  /** The level that a singular value must exceed to be resolvable; `null` where it has no meaning. */
+  noise?: number | null;
+  /** What lies behind `drift`; `null` where no runs are read. */
+  drift?: DriftView | null;
   seconds: number;
+}
+
+/** Runs against their pool, column by column; NaN where a column has fewer than two runs with events. */
+export interface DriftView {
+  runs: string[];
+  /** `[columns, runs]` total-variation distance of each run from the pool; NaN for a run without events. */
+  distances: Float64Array;
+  /** `[columns]` p-value of homogeneity, as it is and after Benjamini-Hochberg. */
+  pValue: Float64Array;
+  adjusted: Float64Array;
+  /** `[columns]` a shift of one run below this can pass unseen. */
+  detectable: Float64Array;
 }
 
 export interface CellView {

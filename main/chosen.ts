@@ -100,7 +100,8 @@ function checkReplaceable(full: string, kind: PlaceKind): void {
 }
 
 export function isBundle(path: string): boolean {
-  return statSync(resolve(path, 'manifest.json'), { throwIfNoEntry: false })?.isFile() === true;
+  const isFolder = statSync(path, { throwIfNoEntry: false })?.isDirectory() === true;
+  return isFolder && statSync(resolve(path, 'manifest.json'), { throwIfNoEntry: false })?.isFile() === true;
 }
 
 /** True for a path with a hidden part (`.ssh`, `.profile`), or inside the system's own folders. */

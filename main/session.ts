@@ -3,6 +3,7 @@ import { existsSync } from 'node:fs';
 import { dirname, resolve, sep } from 'node:path';
 import { oneLine } from '../src/study/input-error';
 import { BRIDGE, type Answer, type CallName, type Notice, type Refusal, type StartFacts } from './bridge';
+import { auditCalls } from './calls/audit-calls';
 import { axisCalls } from './calls/axis-calls';
 import { eventCalls } from './calls/event-calls';
 import { fileCalls } from './calls/file-calls';
@@ -125,6 +126,7 @@ function handlersOf(desk: Desk, keepBudget: number): Handlers<CallName> {
     ...eventCalls(desk),
     ...axisCalls(desk),
     ...matrixCalls(desk),
+    ...auditCalls(desk),
     ...handOverCalls(desk),
   } as unknown as Handlers<CallName>;
 }

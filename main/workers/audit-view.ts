@@ -1,8 +1,8 @@
-import type { Audit } from '../../src/audit/audit';
+import type { Drift } from '../../src/audit/drift';
 import { isAbsent, type Measure } from '../../src/audit/measure';
 import { binRange } from '../../src/study/axis';
-import type { AuditView, BinMeasure, ColumnMeasure, MeasureView } from '../bridge';
-import type { Analysis } from './matrix-task';
+import type { AuditView, BinMeasure, ColumnMeasure, DriftView, MeasureView } from '../bridge';
+import type { Audited } from './matrix-task';
 
 const COLUMN_MEASURES: readonly ColumnMeasure[] = [
   'effectiveEntries',
@@ -22,7 +22,8 @@ const BIN_MEASURES: readonly BinMeasure[] = ['feedIn', 'folded', 'matrixVariance
 const UNKNOWN: Measure = { value: null, reason: 'not measured' };
 
 /** The audit as the window shows it, lists as typed arrays; `seconds` is left to the caller. */
-export function auditView({ measures, flags }: Audit, { tally, recoAxis }: Analysis): AuditView {
+export function auditView({ measures, flags, deep, reference, analysis }: Audited): AuditView {
+  const { tally, recoAxis } = analysis;
   const { first, end } = binRange(recoAxis);
   return {
     flags,
@@ -31,8 +32,28 @@ export function auditView({ measures, flags }: Audit, { tally, recoAxis }: Analy
     columns: named(COLUMN_MEASURES, (name) => measureView(measures.columns[name] ?? UNKNOWN)),
     bins: named(BIN_MEASURES, (name) => measureView(measures.bins[name] ?? UNKNOWN)),
     matrix: named(['singularValues', 'resolvable'] as const, (name) => measureView(measures.matrix[name] ?? UNKNOWN)),
-    reference: null,
+    reference: reference.contents,
+    referenceWords: reference.description,
+    noise: deep?.conditioning.noise ?? null,
+    drift: deep && driftView(deep.drift),
     seconds: 0,
+  };
+}
+
+function driftView({ runs, columns }: Drift): DriftView | null {
+  if (runs.length === 0) return null;
+  const list = (pick: (column: NonNullable<Drift['columns'][number]>) => number): Float64Array =>
+    Float64Array.from(columns, (column) => (column ? pick(column) : NaN));
+  const distances = new Float64Array(columns.length * runs.length).fill(NaN);
+  columns.forEach((column, j) => {
+    column?.distances.forEach((distance, r) => (distances[j * runs.length + r] = distance ?? NaN));
+  });
+  return {
+    runs,
+    distances,
+    pValue: list(({ pValue }) => pValue),
+    adjusted: list(({ adjusted }) => adjusted),
+    detectable: list(({ detectable }) => detectable),
   };
 }
 
@@ -41,11 +62,11 @@ function named<Name extends string, T>(names: readonly Name[], make: (name: Name
 }
 
 /** NaN stands for a place without the value, or for an end that a value has not. */
-function measureView(measure: Measure): MeasureView {
+export function measureView(measure: Measure): MeasureView {
   if (isAbsent(measure)) return { value: null, lower: null, upper: null, reason: measure.reason };
   const list = (values: (number | null)[]): Float64Array => Float64Array.from(values, (value) => value ?? NaN);
   const ends = (values: (number | null)[]): Float64Array | null =>
     values.every((value) => value === null) ? null : list(values);
-  const { value, lower, upper } = measure;
-  return { value: list(value), lower: ends(lower), upper: ends(upper), reason: null };
+  const { value, lower, upper, absent } = measure;
+  return { value: list(value), lower: ends(lower), upper: ends(upper), reason: null, absent };
 }

@@ -1,10 +1,7 @@
 import { outcomePlaces } from '../../src/audit/audit-input';
-import { columnShares, type ColumnShare } from '../../src/audit/column-share';
+import { columnShare, columnShares, type ColumnShare } from '../../src/audit/column-share';
 import { LOSSES_UNRECORDED } from '../../src/audit/loss';
-import { shareInterval } from '../../src/posterior/intervals';
-import { matchedDirichlet } from '../../src/posterior/matched-dirichlet';
-import { momentsOf, type Marginal } from '../../src/posterior/marginal';
-import { hasNoPosterior } from '../../src/posterior/posterior';
+import { NO_MATCHING_BINS } from '../../src/audit/stability';
 import { axesMatch, binRange } from '../../src/study/axis';
 import { rowSums } from '../../src/tally/tally';
 import type { Estimates, TallyView } from '../bridge';
@@ -15,8 +12,6 @@ export type ColumnMeasures = Pick<
   TallyView,
   'population' | 'effective' | 'efficiency' | 'acceptance' | 'stability' | 'absent'
 >;
-
-const AXES_DIFFER = 'stability needs the same edges (or tags) on both axes';
 
 /** Population, efficiency, acceptance and stability of every column, with the study's intervals. */
 export function columnMeasures(analysis: Analysis): ColumnMeasures {
@@ -30,7 +25,10 @@ export function columnMeasures(analysis: Analysis): ColumnMeasures {
     efficiency: lost === null ? null : estimates(columnShares(analysis, kept)),
     acceptance: estimates(columnShares(analysis, window)),
     stability: matching ? stability(analysis, window) : null,
-    absent: { ...(lost === null && { efficiency: LOSSES_UNRECORDED }), ...(!matching && { stability: AXES_DIFFER }) },
+    absent: {
+      ...(lost === null && { efficiency: LOSSES_UNRECORDED }),
+      ...(!matching && { stability: NO_MATCHING_BINS }),
+    },
   };
 }
 
@@ -41,21 +39,9 @@ function estimates(shares: (ColumnShare | null)[]): Estimates {
 }
 
 /** Share of a column's window content that stays in the matching bin; NaN for `below` and `above`, which have none. */
-function stability({ posterior, tally, trueAxis, study }: Analysis, window: readonly number[]): Estimates {
-  const { columns, outcomes } = posterior;
-  const [value, lower, upper] = Array.from({ length: 3 }, () => new Float64Array(columns).fill(NaN)) as Triple;
-  const { first, end } = binRange(trueAxis);
-  for (let j = first; j < end; j++) {
-    if (hasNoPosterior(posterior, j)) continue;
-    const events = tally.cells.events.subarray(j * outcomes, (j + 1) * outcomes);
-    const shape = matchedDirichlet(posterior, j);
-    const sum = (of: Float64Array): number => window.reduce((total, k) => (k === j ? total : total + of[k]!), 0);
-    const marginal: Marginal = { a: shape[j]!, b: sum(shape), method: 'exact' };
-    if (marginal.a + marginal.b === 0) continue;
-    const interval = shareInterval(marginal, events[j]!, sum(events), study.credibility);
-    [value[j], lower[j], upper[j]] = [momentsOf(marginal).mean, interval.lower, interval.upper];
-  }
-  return { value, lower, upper };
+function stability(analysis: Analysis, window: readonly number[]): Estimates {
+  const { first, end } = binRange(analysis.trueAxis);
+  return estimates(
+    analysis.tally.columnNames.map((_, j) => (j < first || j >= end ? null : columnShare(analysis, j, [j], window))),
+  );
 }
-
-type Triple = [Float64Array, Float64Array, Float64Array];

@@ -1,5 +1,7 @@
-import { auditOf } from '../../src/audit/audit';
+import { auditOf, type Audit } from '../../src/audit/audit';
 import type { AuditInput } from '../../src/audit/audit-input';
+import type { MatrixSampler } from '../../src/audit/matrix-draws';
+import { referenceOf, type ReferenceSpectrum } from '../../src/audit/reference';
 import { BLOCK, drawBlock, planEnsemble, type EnsemblePlan } from '../../src/ensemble/draw';
 import { posteriorOf } from '../../src/posterior/posterior';
 import { priorOf, type PriorCounts } from '../../src/posterior/prior';
@@ -8,11 +10,12 @@ import { summarise, type Summary } from '../../src/posterior/summary';
 import { canonicalJson } from '../../src/study/fingerprint';
 import { resolveAxis, type Study } from '../../src/study/study';
 import type { Tally } from '../../src/tally/tally';
-import type { AuditView, CellView, ColumnView, PosteriorView, Replicas } from '../bridge';
+import type { AuditView, CellView, ColumnView, InfluenceView, PosteriorView, Replicas } from '../bridge';
 import { auditView } from './audit-view';
 import { cellView } from './cell-view';
 import { columnView } from './column-view';
 import { columnMeasures, type ColumnMeasures } from './column-measures';
+import { influenceView } from './influence-view';
 import { posteriorView } from './posterior-view';
 import type { Handled, Handlers } from './serve';
 
@@ -33,6 +36,7 @@ export type MatrixCalls = {
   column: { argument: AtTally & { column: number }; result: ColumnView };
   replicas: { argument: AtTally & { indices: number[] }; result: Replicas };
   audit: { argument: AtTally; result: AuditView };
+  influence: { argument: AtTally; result: InfluenceView };
 };
 
 /** A tally with its posterior under a study's prior; the summary is worked out when it is first asked for. */
@@ -50,13 +54,18 @@ const MOST_KEPT = 8;
 export function matrixTask(): Handlers<MatrixCalls> {
   const tallies = new Recent<Tally>(MOST_KEPT);
   const analyses = new Recent<Analysis>(MOST_KEPT);
-  const audits = new Recent<AuditView>(MOST_KEPT);
+  const audits = new Recent<Audited>(MOST_KEPT);
   const analysed = (at: AtTally): Analysis => {
     const { prior, credibility } = at.study;
     const key = canonicalJson([at.key, prior, credibility]);
     const kept = analyses.of(key, () => analyse(tallies.get(at.key), at.study));
     // What the posterior does not depend on is the caller's own: limits, reference, seed.
     return { ...kept, study: at.study };
+  };
+  const audited = (at: AtTally): Audited => {
+    const { prior, credibility, limits, reference, ensemble } = at.study;
+    const key = canonicalJson([at.key, prior, credibility, limits, reference, ensemble.seed, at.referenceTable]);
+    return audits.of(key, () => audit(analysed(at), at.referenceTable));
   };
   return {
     take({ key, tally }) {
@@ -68,11 +77,8 @@ export function matrixTask(): Handlers<MatrixCalls> {
     cell: ({ column, outcome, ...at }) => ({ result: cellView(analysed(at), column, outcome) }),
     column: ({ column, ...at }) => ({ result: columnView(analysed(at), column) }),
     replicas: ({ indices, ...at }) => ({ result: replicasOf(analysed(at), at.study.ensemble.seed, indices) }),
-    audit(at) {
-      const { prior, credibility, limits, reference, ensemble } = at.study;
-      const key = canonicalJson([at.key, prior, credibility, limits, reference, ensemble.seed, at.referenceTable]);
-      return timed(() => audits.of(key, () => auditView(auditOf(auditInput(analysed(at), at)), analysed(at))));
-    },
+    audit: (at) => timed(() => auditView(audited(at))),
+    influence: (at) => timed(() => influenceView(audited(at))),
   };
 }
 
@@ -95,8 +101,23 @@ function analyse(tally: Tally, study: Study): Analysis {
   };
 }
 
-function auditInput({ study, trueAxis, recoAxis, tally, posterior }: Analysis, _at: AtTally): AuditInput {
-  return { study, trueAxis, recoAxis, tally, posterior };
+/** An audit with what it rests on. */
+export interface Audited extends Audit {
+  analysis: Analysis;
+  reference: ReferenceSpectrum;
+}
+
+/** The ensemble's own sampler, so that the audit looks at the replicas that are handed over. */
+const sampler: MatrixSampler = (from, seed) => {
+  const plan = planEnsemble(from);
+  return (block, replicas, out) => drawBlock(plan, seed, block, replicas, out);
+};
+
+function audit(analysis: Analysis, referenceTable: string | null): Audited {
+  const { study, trueAxis, tally } = analysis;
+  const sources = { where: 'study', ...(referenceTable !== null && { readTable: () => referenceTable }) };
+  const reference = referenceOf(study.reference, trueAxis, tally, sources);
+  return { ...auditOf(analysis, { reference, sampler }), analysis, reference };
 }
 
 /** The replicas of the given indices, the very numbers that a bundle of this study holds. */
