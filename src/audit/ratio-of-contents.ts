@@ -22,7 +22,7 @@ export interface ContentRatio {
   tilt: number;
 }
 
-/** Shapes of a content known better than this are as good as certain: a part in a million of one sd. */
+/** Shapes of a content known better than this are as good as certain: its sd is a part in a million of it. */
 const MOST_SHAPE = 1e12;
 
 /** `null` where both contents are 0. */

@@ -43,10 +43,11 @@ export function conditionalMarginal(
   if (shape.every((a) => a === 0)) return null;
   const scale = column.scale && Float64Array.from(among, (k) => column.scale![k]!);
   const part = { ...posterior, columns: 1, outcomes: among.length, shape, scale };
+  const places = new Map(among.map((k, place) => [k, place]));
   return marginalOf(
     part,
     0,
-    chosen.map((k) => among.indexOf(k)),
+    chosen.map((k) => places.get(k)!),
   );
 }
 

@@ -35,7 +35,16 @@ export function columnMoments(
   const spread = totalSpread(rule);
   const mean = new Float64Array(shape.length);
   const variance = new Float64Array(shape.length);
+  // Cells without events share their shape and scale: the first of them serves all.
+  const first = new Map<number, number>();
   for (let k = 0; k < shape.length; k++) {
+    const same = first.get(shape[k]!);
+    if (same !== undefined && scale[same] === scale[k]) {
+      mean[k] = mean[same]!;
+      variance[k] = variance[same]!;
+      continue;
+    }
+    first.set(shape[k]!, k);
     const sums = sumsOf(rule, [k]);
     mean[k] = sums.mean;
     variance[k] = covariance(sums, sums, sums.shared, sums.spread, spread);

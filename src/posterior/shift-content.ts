@@ -10,14 +10,16 @@ export function shiftContent(content: Float64Array, axis: Axis, distance: number
   const edges = axis.spacing === 'log' ? axis.edges.map(Math.log) : axis.edges;
   const { first, end } = binRange(axis);
   const moved = content.slice().fill(0, first, end);
+  const startOf = (i: number): number => (i < first ? -Infinity : edges[i - first]!);
+  const endOf = (i: number): number => (i < end ? edges[i - first + 1]! : Infinity);
+  // Both lists of bins increase, so a bin that one source bin has passed is passed by all after it.
+  let reached = first - 1;
   for (let k = first; k < end; k++) {
-    const [lo, hi] = [edges[k - first]!, edges[k - first + 1]!];
-    const density = content[k]! / (hi - lo);
-    for (let i = first - 1; i <= end; i++) {
-      const from = i < first ? -Infinity : edges[i - first]!;
-      const to = i < end ? edges[i - first + 1]! : Infinity;
-      const overlap = Math.min(hi + distance, to) - Math.max(lo + distance, from);
-      if (overlap > 0) moved[i]! += density * overlap;
+    const [lo, hi] = [startOf(k) + distance, endOf(k) + distance];
+    while (endOf(reached) <= lo) reached++;
+    for (let i = reached; startOf(i) < hi && i <= end; i++) {
+      const overlap = Math.min(hi, endOf(i)) - Math.max(lo, startOf(i));
+      moved[i]! += content[k]! * (overlap / (hi - lo));
     }
   }
   return moved;

@@ -1,7 +1,6 @@
 import { cellInterval, type Interval, type IntervalKind } from './intervals';
-import { cellMarginals, type Marginal } from './marginal';
-import { columnOf, hasNoPosterior, type Posterior } from './posterior';
-import { columnMoments } from './share-moments';
+import { cellMarginals, momentsOf, type Marginal } from './marginal';
+import { hasNoPosterior, type Posterior } from './posterior';
 
 /**
  * Posterior summary of every cell. Arrays are `[columns, outcomes]`, C order.
@@ -47,33 +46,35 @@ function fillColumn(
   credibility: number,
   kind: IntervalKind,
 ): void {
-  const { shape, scale } = columnOf(posterior, j);
-  const { mean, variance } = columnMoments(shape, scale);
   const from = j * summary.outcomes;
-  summary.mean.set(mean, from);
-  summary.sd.set(variance.map(Math.sqrt), from);
-  summary.method[j] = scale ? 'matched' : 'exact';
-  const marginals = cellMarginals(posterior, j);
-  const seen = new Map<string, Interval>();
-  for (let k = 0; k < summary.outcomes; k++) {
-    const interval = remembered(seen, marginals[k]!, events[from + k]!, credibility, kind);
-    summary.lower[from + k] = interval.lower;
-    summary.upper[from + k] = interval.upper;
-  }
+  const seen = new Map<number, Known>();
+  cellMarginals(posterior, j).forEach((marginal, k) => {
+    const { mean, variance } = momentsOf(marginal);
+    const { lower, upper } = remembered(seen, marginal, events[from + k]!, credibility, kind);
+    summary.method[j] = marginal.method;
+    summary.mean[from + k] = mean;
+    summary.sd[from + k] = Math.sqrt(variance);
+    summary.lower[from + k] = lower;
+    summary.upper[from + k] = upper;
+  });
 }
+
+type Known = Interval & Pick<Marginal, 'b'>;
 
 /** Most cells of a column share their content, none or a few events: each content is worked out once. */
 function remembered(
-  seen: Map<string, Interval>,
+  seen: Map<number, Known>,
   marginal: Marginal,
   events: number,
   credibility: number,
   kind: IntervalKind,
 ): Interval {
-  const key = `${marginal.a} ${marginal.b} ${events === 0}`;
-  const known = seen.get(key) ?? cellInterval(marginal, events, credibility, kind);
-  seen.set(key, known);
-  return known;
+  const key = events === 0 ? -marginal.a : marginal.a;
+  const known = seen.get(key);
+  if (known?.b === marginal.b) return known;
+  const interval = cellInterval(marginal, events, credibility, kind);
+  seen.set(key, { ...interval, b: marginal.b });
+  return interval;
 }
 
 function fillUnknown(summary: Summary, j: number): void {

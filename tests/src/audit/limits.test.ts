@@ -48,7 +48,7 @@ describe('events that settle a limit', () => {
   });
 
   it('do so in at least 9 of 10 simulated campaigns whose true share is the mean, and a quarter of them less often', () => {
-    const stream = streamOf(5, PURPOSE.planner, 0, 0);
+    const stream = streamOf(5, PURPOSE.test, 0, 0);
     const now = beta(12.5, 188.5);
     const mean = 12.5 / 201;
     const { events, as } = eventsToSettle(now, 0.05, 'above', 0.95, 1)!;

@@ -7,7 +7,7 @@ const shape = Float64Array.of(40.5, 12.5, 200.5, 0.5, 3.5);
 const events = Float64Array.of(40, 12, 200, 0, 3);
 
 function replicasOf(count: number, seed: number): Float64Array {
-  const stream = streamOf(seed, PURPOSE.ensemble, 0, 0);
+  const stream = streamOf(seed, PURPOSE.test, 0, 0);
   const replicas = new Float64Array(count * shape.length);
   for (let r = 0; r < count; r++) {
     const draws = shape.map((a) => stream.gamma(a));
