@@ -1,20 +1,26 @@
 import type { Reader } from './batch';
 import { firstBytes } from './byte-source';
 import { csv } from './csv';
+import { hdf5 } from './hdf5';
 import { ndjson } from './ndjson';
 import { compressionOf, openBytes } from './open-bytes';
 import { parquet } from './parquet';
 
 /** All formats of event files that can be read. */
-export const READERS: readonly Reader[] = [csv, ndjson, parquet];
+export const READERS: readonly Reader[] = [csv, ndjson, parquet, hdf5];
 
 /** First bytes by which a binary format is known, as Latin-1. */
-const MAGIC: [string, Reader][] = [['PAR1', parquet]];
+const MAGIC: [string, Reader][] = [
+  ['PAR1', parquet],
+  ['\x89HDF\r\n\x1a\n', hdf5],
+];
 const LONGEST_MAGIC = 16;
 
-/** Names that tell a format of text, compressed or not. */
+/** Names that tell a format: of text, compressed or not, or of a binary file whose first bytes do not. */
 const ENDINGS: [RegExp, Reader][] = [
   [/\.(ndjson|jsonl|json)(\.gz|\.zst|\.zstd)?$/i, ndjson],
+  [/\.(h5|hdf5|hdf|he5)$/i, hdf5],
+  [/\.(parquet|pq)$/i, parquet],
   [/\.(csv|tsv)(\.gz|\.zst|\.zstd)?$/i, csv],
 ];
 

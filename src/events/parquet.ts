@@ -2,12 +2,12 @@ import { closeSync } from 'node:fs';
 import type { DuckDBDataChunk } from '@duckdb/node-api';
 import { InputError } from '../study/input-error';
 import type { Batch, Need, Reader, Unit } from './batch';
-import { BatchBuilder } from './batch-builder';
 import { openFile, sizeOf } from './byte-source';
 import { OneFile } from './duckdb';
 import { positionsOf } from './positions';
-import { SlabTaker, type Slab } from './slab';
-import { ask, kindOf } from './sql-columns';
+import type { Slab } from './slab';
+import { batchesOf, type Stretch } from './slab-batches';
+import { ask, kindOf, type Asked } from './sql-columns';
 
 const TABLE = 'read_parquet($1, hive_partitioning = false, union_by_name = false, filename = false)';
 
@@ -47,42 +47,36 @@ export const parquet: Reader = {
 };
 
 async function* readUnit(unit: Unit, needs: readonly Need[], signal?: AbortSignal): AsyncGenerator<Batch> {
-  const { path, name, end } = unit;
+  const { path, name } = unit;
   const { columns, rows, positions, types } = unit.detail as Detail;
-  const builder = new BatchBuilder(needs, name);
-  const taker = new SlabTaker(needs, builder);
   const asked = needs.map((need, i) => ask(need, types[i], `c${positions[i]}`, name));
-  const expressions = asked.flatMap(({ numbers, text }) => [numbers, text].filter((each) => each !== null));
-  let passed = 0;
-  let told = 0;
-  const take = (): Batch => {
-    // DuckDB tells no bytes: the share of rows stands for them.
-    const bytes = Math.round((rows > 0 ? passed / rows : 1) * end) - told;
-    told += bytes;
-    return builder.take(bytes, passed);
-  };
   const file = await OneFile.open(path, name, TABLE);
   try {
-    for await (const { chunk, rows: count } of file.rows(expressions, columns, signal)) {
-      const slabs = slabsOf(chunk, asked);
-      for (let from = 0; from < count;) {
-        const to = Math.min(count, from + taker.room);
-        taker.take(slabs, from, to, passed + 1);
-        passed += to - from;
-        from = to;
-        if (builder.full) yield take();
-      }
-    }
-    if (passed !== rows) {
-      throw new InputError(name, `${passed} rows where its footer tells ${rows}`, 'copy or make the file again');
-    }
-    yield take();
+    yield* batchesOf(unit, needs, rows, stretches(file, asked, columns, rows, name, signal), signal);
   } finally {
     file.close();
   }
 }
 
-function slabsOf(chunk: DuckDBDataChunk, asked: readonly { numbers: string | null; text: string | null }[]): Slab[] {
+async function* stretches(
+  file: OneFile,
+  asked: Asked[],
+  columns: number,
+  rows: number,
+  name: string,
+  signal?: AbortSignal,
+): AsyncGenerator<Stretch> {
+  const expressions = asked.flatMap(({ numbers, text }) => [numbers, text].filter((each) => each !== null));
+  let passed = 0;
+  for await (const { chunk, rows: count } of file.rows(expressions, columns, signal)) {
+    passed += count;
+    yield { slabs: slabsOf(chunk, asked), rows: count };
+  }
+  if (passed === rows) return;
+  throw new InputError(name, `${passed} rows where its footer tells ${rows}`, 'copy or make the file again');
+}
+
+function slabsOf(chunk: DuckDBDataChunk, asked: readonly Asked[]): Slab[] {
   let at = 0;
   return asked.map(({ numbers, text }) => {
     const doubles = numbers === null ? null : (chunk.getColumnVector(at++) as unknown as { items: Float64Array }).items;

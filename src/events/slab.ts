@@ -13,6 +13,17 @@ export interface Slab {
   text: ((row: number) => string) | null;
 }
 
+/** From here on an integer has 16 digits: a label or identity is then made of its exact text (see `identity.ts`). */
+const LONG_INTEGER = 1e15;
+
+/** The slab of 64-bit integers: for a number the nearest doubles, else exact. */
+export function integerSlab(values: BigInt64Array | BigUint64Array, as: Need['as']): Slab {
+  const numbers = Float64Array.from(values as BigInt64Array, Number);
+  if (as === 'number') return { numbers, text: null };
+  for (let i = 0; i < numbers.length; i++) if (Math.abs(numbers[i]) >= LONG_INTEGER) numbers[i] = NaN;
+  return { numbers, text: (row) => String(values[row]) };
+}
+
 /** Takes slabs into batches. A text that should be a number and is none rejects its row. */
 export class SlabTaker {
   /** Codes of numbers met as labels: their text is made once. */

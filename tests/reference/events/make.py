@@ -1,11 +1,15 @@
 """Makes the event files of this folder, which the readers of src/events are tested against.
 
 Made on Debian 12 with python3 3.11, numpy 1.24.2, h5py 3.7.0 and zstd 1.5.4:  python3 make.py
-Every file holds the table of `rows`: row i is t = i % 50 + 0.25, r = i * 7 % 101.
+Text files hold the table of row i: t = i % 50 + 0.25, r = i * 7 % 101. Binary files say what they hold below.
 """
 
+import os
 import subprocess
 from pathlib import Path
+
+import h5py
+import numpy as np
 
 HERE = Path(__file__).parent
 
@@ -28,4 +32,59 @@ def make_zstd():
     (HERE / "tiny.csv.zst").write_bytes(zstd("t,r\n1,2\n"))
 
 
+ROWS = 1000
+
+
+def columns():
+    """Row i of 1000, in every kind of number and text; the last column has its length and all its digits."""
+    i = np.arange(ROWS)
+    return {
+        "e_tag": i / 4,
+        "e_cluster": np.where(i % 10 == 3, np.nan, i / 8).astype("f4"),
+        "big": (i / 16).astype(">f8"),
+        "short": (i % 100 - 50).astype("i1"),
+        "swapped": (i - 500).astype(">i4"),
+        "event": np.int64(9007199254740992) + i,
+        "unsigned": np.uint64(2**63) + i.astype("u8"),
+        "quality": i % 3 == 0,
+        "run": np.array([f"run {k % 4}" for k in i], dtype="S8"),
+    }
+
+
+def make_hdf5():
+    data = columns()
+    with h5py.File(HERE / "columns.h5", "w") as file:
+        group = file.create_group("run1")
+        for name, values in data.items():
+            group.create_dataset(name, data=values, chunks=(300,), compression="gzip", shuffle=True)
+        group.create_dataset("label", data=[f"\u00e9 {k % 5}" for k in range(ROWS)], dtype=h5py.string_dtype(), chunks=(256,))
+        group.create_dataset("matrix", data=np.zeros((ROWS, 2)), compression="gzip")
+        file.create_dataset("run2/e_tag", data=data["e_tag"][:10] * 2)
+        file.create_dataset("scalar", data=1.5)
+        file["alias"] = h5py.SoftLink("/run1/e_tag")
+    record = np.empty(ROWS, dtype=[(name, values.dtype) for name, values in data.items()] + [("pair", "f8", 2)])
+    for name, values in data.items():
+        record[name] = values
+    record["pair"] = 0
+    with h5py.File(HERE / "table.h5", "w") as file:
+        file.create_dataset("events/table", data=record, chunks=(128,), compression="gzip", fletcher32=True)
+    with h5py.File(HERE / "plain.h5", "w") as file:
+        file["t"] = data["e_tag"]
+        file["r"] = data["e_tag"] / 2
+    make_outward_links()
+
+
+def make_outward_links():
+    """Files that point at other files: their readers must not follow."""
+    with h5py.File(HERE / "outward.h5", "w") as file:
+        file["link"] = h5py.ExternalLink("plain.h5", "/t")
+        file.create_dataset("raw", shape=(8,), dtype="f8", external=[("plain.h5", 0, 64)])
+        layout = h5py.VirtualLayout(shape=(8,), dtype="f8")
+        layout[:] = h5py.VirtualSource("plain.h5", "t", shape=(ROWS,))[:8]
+        file.create_virtual_dataset("virtual", layout)
+        file["t"] = np.arange(8.0)
+
+
+os.chdir(HERE)
 make_zstd()
+make_hdf5()

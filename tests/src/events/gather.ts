@@ -27,7 +27,7 @@ export function fileOf(content: string | Uint8Array, ending = '.csv'): string {
 /** Needs by `column` (a number) or `column:text`, `column:identity`. */
 export function needsOf(...columns: string[]): Need[] {
   return columns.map((text) => {
-    const [column, as = 'number'] = text.split(':');
+    const [, column, as = 'number'] = /^(.*?)(?::(text|identity))?$/.exec(text)!;
     return { column, as: as as Need['as'] };
   });
 }
