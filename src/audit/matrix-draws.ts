@@ -19,7 +19,7 @@ export interface MatrixWatcher {
 }
 
 /** Replicas of a block, as in the ensemble: what the audit looks at are the ensemble's own first replicas. */
-const BLOCK = 32;
+export const BLOCK = 32;
 
 /** Replicas behind the audit's intervals and probabilities: a probability of 0.05 is then known to 0.011 (one sigma). */
 export const REPLICAS = 400;
