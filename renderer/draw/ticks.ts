@@ -1,0 +1,85 @@
+import { scaleLinear, scaleLog } from 'd3';
+import { exact, superscript, THIN, TIMES, value } from '../words/number';
+
+export interface Tick {
+  value: number;
+  /** Empty for a minor tick of a log axis. */
+  text: string;
+}
+
+const DECADE_DIGITS = [2, 3, 4, 5, 6, 7, 8, 9];
+/** Fewer decades than this carry labels between the powers of ten too. */
+const FEW_DECADES = 1.5;
+
+/** About `room / spacing` ticks over `[from, to]`, with labels that tell them apart. */
+export function ticksOf(kind: 'linear' | 'log', from: number, to: number, room: number, spacing: number): Tick[] {
+  const most = Math.max(2, Math.floor(room / spacing));
+  if (!(to > from)) return [{ value: from, text: value(from) }];
+  return kind === 'log' && from > 0 ? logTicks(from, to, most) : linearTicks(from, to, most);
+}
+
+function linearTicks(from: number, to: number, most: number): Tick[] {
+  const values = scaleLinear([from, to], [0, 1]).ticks(most);
+  return values.map((v) => ({ value: v, text: tickText(v) }));
+}
+
+function logTicks(from: number, to: number, most: number): Tick[] {
+  const decades = Math.log10(to / from);
+  if (decades < FEW_DECADES) return fewDecades(from, to, most);
+  const every = Math.ceil(decades / most);
+  const ticks: Tick[] = [];
+  for (let e = Math.ceil(Math.log10(from) - 1); e <= Math.log10(to); e++) {
+    const power = Number(`1e${e}`);
+    if (power >= from && power <= to) ticks.push({ value: power, text: e % every === 0 ? powerText(e) : '' });
+    if (every === 1) for (const d of DECADE_DIGITS) pushMinor(ticks, d * power, from, to);
+  }
+  return ticks;
+}
+
+function fewDecades(from: number, to: number, most: number): Tick[] {
+  const ticks = scaleLog([from, to], [0, 1]).ticks(most);
+  const keep = thinned(ticks, most);
+  return ticks.map((v) => ({ value: v, text: keep.has(v) ? tickText(v) : '' }));
+}
+
+function thinned(values: number[], most: number): Set<number> {
+  const every = Math.ceil(values.length / most);
+  return new Set(values.filter((_, i) => i % every === 0));
+}
+
+function pushMinor(ticks: Tick[], v: number, from: number, to: number): void {
+  if (v >= from && v <= to) ticks.push({ value: v, text: '' });
+}
+
+/** 0.001 to 10 000 in full, other powers of ten as such. */
+function powerText(exponent: number): string {
+  return exponent >= -3 && exponent <= 4 ? exact(10 ** exponent) : `10${superscript(exponent)}`;
+}
+
+/** A tick is a short decimal: its own digits, freed of binary noise, as a power of ten where it is long. */
+export function tickText(v: number): string {
+  const clean = Number(v.toPrecision(12));
+  const size = Math.abs(clean);
+  if (size === 0 || (size >= 1e-4 && size < 1e6)) return exact(clean);
+  const [mantissa, exponent] = clean.toExponential().split('e');
+  const power = `10${superscript(Number(exponent))}`;
+  const lead = exact(Number(mantissa));
+  return lead === '1' ? power : `${lead}${THIN}${TIMES}${THIN}${power}`;
+}
+
+/** A domain with a little air above, from zero where zero means something. */
+export function domainOf(values: Iterable<number>, options: { zero: boolean; log: boolean }): [number, number] {
+  let least = Infinity;
+  let greatest = -Infinity;
+  for (const v of values) {
+    if (!Number.isFinite(v) || (options.log && !(v > 0))) continue;
+    if (v < least) least = v;
+    if (v > greatest) greatest = v;
+  }
+  if (least > greatest) return options.log ? [0.1, 1] : [0, 1];
+  if (options.log) return [least === greatest ? least / 2 : least / 1.2, greatest * 1.2];
+  const low = options.zero ? Math.min(0, least) : least;
+  const high = options.zero ? Math.max(0, greatest) : greatest;
+  const air = (high - low) * 0.05 || Math.abs(high) * 0.05 || 1;
+  return [low === 0 ? 0 : low - air, high === 0 ? 0 : high + air];
+}
