@@ -5,10 +5,15 @@ import { defineConfig } from 'electron-vite';
 const at = (path: string): string => resolve(import.meta.dirname, path);
 const worker = (name: string): string => at(`main/workers/${name}-worker.ts`);
 
+/** Packages built into the program, with what they import. */
+const BUNDLED = ['zod', 'commander', 'tinyglobby', 'fdir', 'picomatch', 'arquero', '@uwdata/flechette', 'acorn'];
+
 export default defineConfig({
   main: {
     build: {
       target: 'node20',
+      // Bundled, because a start of the command line would else read hundreds of small files.
+      externalizeDeps: { exclude: BUNDLED },
       rolldownOptions: {
         input: {
           command: at('main/command.ts'),

@@ -1,5 +1,6 @@
+import { readFileSync } from 'node:fs';
 import { resolve } from 'node:path';
-import { auditOf } from '../src/audit/audit';
+import { analyseModel, modelOf } from '../src/handover/analyse';
 import { FolderInTheMaking } from '../src/handover/folder-in-the-making';
 import type { Manifest } from '../src/handover/manifest';
 import {
@@ -10,12 +11,8 @@ import {
   writeManifest,
   type BundleContents,
 } from '../src/handover/write-bundle';
-import { posteriorOf, type Posterior } from '../src/posterior/posterior';
-import { priorOf } from '../src/posterior/prior';
-import { summarise } from '../src/posterior/summary';
 import { InputError, stopIfCancelled } from '../src/study/input-error';
-import type { Axis } from '../src/study/axis';
-import { resolveAxis, type Study } from '../src/study/study';
+import type { Study } from '../src/study/study';
 import type { Tally } from '../src/tally/tally';
 import { drawEnsemble } from './draw-ensemble';
 import type { Progress } from './progress';
@@ -32,6 +29,8 @@ export interface BuildOptions {
   study: Study;
   /** Names the study in errors. */
   where: string;
+  /** The study's folder: the table of a reference spectrum is relative to it. */
+  folder: string;
   source: BundleSource;
   out: string;
   version: string;
@@ -56,6 +55,7 @@ export async function buildBundle(options: BuildOptions): Promise<BuiltBundle> {
   const { study, source, signal, version } = options;
   const out = resolve(options.out);
   const model = modelOf(study, source.tally, options.where);
+  const sources = { where: options.where, readTable: tableReader(options.folder) };
   const folder = new FolderInTheMaking(out, MANIFEST);
   try {
     const { replicas, seed } = study.ensemble;
@@ -63,7 +63,8 @@ export async function buildBundle(options: BuildOptions): Promise<BuiltBundle> {
     const drawing = drawEnsemble({ ...options, parameters: model.posterior, seed, replicas, path, place: out });
     // Audit and tables are made while the workers draw; a fault in them must not leave the drawing without a listener.
     drawing.catch(() => undefined);
-    const contents = { version, study, ...bundleSource(source), ...model, ...auditedModel(study, source.tally, model) };
+    const contents = { version, ...bundleSource(source), ...analyseModel(model, sources) };
+    if (study.reference.file !== undefined) folder.write('reference.csv', sources.readTable(study.reference.file));
     writeBundleFiles(folder, contents);
     const drawn = await drawing;
     folder.record(REPLICAS, drawn.bytes, drawn.sha256);
@@ -78,39 +79,25 @@ export async function buildBundle(options: BuildOptions): Promise<BuiltBundle> {
   }
 }
 
-function bundleSource({ tally, inputs, rejectedRows }: BundleSource) {
-  const named = inputs.map(({ name, bytes, sha256, rows, rejected }) => ({ file: name, bytes, sha256, rows, rejected }));
-  return { tally, inputs: named, rejectedRows: rejectedRows() };
+function bundleSource({ inputs, rejectedRows }: BundleSource) {
+  const named = inputs.map(({ name, bytes, sha256, rows, rejected }) => ({
+    file: name,
+    bytes,
+    sha256,
+    rows,
+    rejected,
+  }));
+  return { inputs: named, rejectedRows: rejectedRows() };
 }
 
-/** Axes and posterior of a tally. Throws `InputError` where the prior gives a column none. */
-export function modelOf(study: Study, tally: Tally, where: string): Model {
-  const trueAxis = resolveAxis(study.axes.true);
-  const recoAxis = resolveAxis(study.axes.reconstructed);
-  const posterior = posteriorOf(tally.cells, priorOf(study.prior, tally, trueAxis, recoAxis));
-  checkPosterior(tally, posterior, where);
-  return { trueAxis, recoAxis, posterior };
-}
-
-export interface Model {
-  trueAxis: Axis;
-  recoAxis: Axis;
-  posterior: Posterior;
-}
-
-function auditedModel(study: Study, tally: Tally, model: Model) {
-  const summary = summarise(model.posterior, tally.cells.events, study.credibility);
-  return { summary, audit: auditOf({ study, tally, ...model }) };
-}
-
-/** A prior of zero is proper only where every outcome of every column was seen (statistics.md 3). */
-function checkPosterior(tally: Tally, { shape, outcomes }: Posterior, where: string): void {
-  const unseen = shape.indexOf(0);
-  if (unseen < 0) return;
-  const column = tally.columnNames[Math.floor(unseen / outcomes)];
-  throw new InputError(
-    `${where}: prior`,
-    `a prior of zero, but column ${column} has no event in outcome ${tally.outcomeNames[unseen % outcomes]}`,
-    'give a pseudo-count above 0 (0.5 is Jeffreys), or merge bins until every outcome is seen',
-  );
+function tableReader(folder: string): (file: string) => string {
+  return (file) => {
+    try {
+      return readFileSync(resolve(folder, file), 'utf8');
+    } catch (cause) {
+      throw new InputError(file, 'the reference table cannot be read', 'correct reference.file of the study', {
+        cause,
+      });
+    }
+  };
 }

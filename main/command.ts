@@ -14,7 +14,12 @@ const READ_WORKER = new URL('./read-worker.js', import.meta.url);
 const DRAW_WORKER = new URL('./draw-worker.js', import.meta.url);
 
 const cancel = new AbortController();
-const surroundings: Surroundings = { readWorker: READ_WORKER, drawWorker: DRAW_WORKER, version: VERSION, signal: cancel.signal };
+const surroundings: Surroundings = {
+  readWorker: READ_WORKER,
+  drawWorker: DRAW_WORKER,
+  version: VERSION,
+  signal: cancel.signal,
+};
 
 function wholeNumber(least: number) {
   return (text: string): number => {
@@ -38,7 +43,9 @@ Exit status: 0 done; 1 what was checked does not hold; 2 bad input or usage; 130
 
 function program(): Command {
   const entasis = new Command('entasis')
-    .description('Response matrices from tagged events, with the uncertainty of every column, an audit, and an ensemble of replicas.')
+    .description(
+      'Response matrices from tagged events, with the uncertainty of every column, an audit, and an ensemble of replicas.',
+    )
     .version(VERSION)
     .addHelpText('after', CAUTIONS_HELP)
     .helpCommand(false)
@@ -126,7 +133,13 @@ function fail(error: unknown): number {
   if (error instanceof InputError) return say(error);
   const { message, code } = error as NodeJS.ErrnoException;
   if (process.env['ENTASIS_TRACE']) console.error(error);
-  return say(new InputError(code ?? 'unexpected fault', message, 'report it with the study, if you can; ENTASIS_TRACE=1 shows the trace'));
+  return say(
+    new InputError(
+      code ?? 'unexpected fault',
+      message,
+      'report it with the study, if you can; ENTASIS_TRACE=1 shows the trace',
+    ),
+  );
 }
 
 function say(error: InputError): number {

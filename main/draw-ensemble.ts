@@ -45,7 +45,10 @@ export async function drawEnsemble(options: DrawOptions): Promise<{ bytes: numbe
   try {
     put(npyHeader('<f8', shape));
     // One writer, in order: workers that write to one file wait for each other longer than the writing takes.
-    const slots = new Slots(Math.max(options.workers + 1, Math.floor(AHEAD_BYTES / (BLOCK * cells * 8))), BLOCK * cells * 8);
+    const slots = new Slots(
+      Math.max(options.workers + 1, Math.floor(AHEAD_BYTES / (BLOCK * cells * 8))),
+      BLOCK * cells * 8,
+    );
     const inOrder = new InOrder<SharedArrayBuffer>((into, block) => {
       put(new Uint8Array(into, 0, Math.min(BLOCK, replicas - block * BLOCK) * cells * 8));
       slots.give(into);

@@ -33,7 +33,7 @@ export { ledgerBalances, type Ledger } from './tally/ledger';
 export type { Cells, Duplicates, Tally } from './tally/tally';
 
 // 3. Posterior and audit
-export { analyse, type Analysis } from './analyse';
+export { analyse, type Analysis } from './handover/analyse';
 export { columnOf, effectiveEntries, posteriorOf, type Posterior } from './posterior/posterior';
 export { priorOf, type PriorCounts } from './posterior/prior';
 export { summarise, type Summary } from './posterior/summary';

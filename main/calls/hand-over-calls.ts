@@ -23,7 +23,7 @@ async function build(desk: Desk, argument: Checked<'build'>, job: Job): Promise<
   const { reading, tally } = await desk.events.source(files, { signal, onProgress });
   const source = { tally, inputs: reading.inputs, rejectedRows: reading.rejectedRows };
   const settings = { version, workers, drawWorker: workerFiles.draw, signal, onProgress };
-  const { manifest } = await buildBundle({ study: files.study, where: 'study', source, out, ...settings });
+  const { manifest } = await buildBundle({ study: files.study, where: 'study', folder: files.folder, source, out, ...settings });
   desk.chosen.bundle(out, true);
   const written = Object.entries(manifest.files).map(([name, file]) => ({ name, ...file }));
   return {

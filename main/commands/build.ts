@@ -28,10 +28,26 @@ export async function build(path: string, flags: BuildFlags, around: Surrounding
   const onProgress = line.show.bind(line);
   const source = flags.from
     ? await fromParts(flags.from, study, path)
-    : await readEvents({ study, folder: dirname(resolve(path)), where: path, ...around, workers: flags.workers, onProgress });
+    : await readEvents({
+        study,
+        folder: dirname(resolve(path)),
+        where: path,
+        ...around,
+        workers: flags.workers,
+        onProgress,
+      });
   try {
     const out = flags.out ?? defaultBundleFolder(path);
-    const built = await buildBundle({ study, where: path, source, out, ...around, workers: flags.workers, onProgress });
+    const built = await buildBundle({
+      study,
+      where: path,
+      folder: dirname(resolve(path)),
+      source,
+      out,
+      ...around,
+      workers: flags.workers,
+      onProgress,
+    });
     line.clear();
     const seconds = (performance.now() - started) / 1000;
     process.stdout.write(flags.json ? `${JSON.stringify(buildJson(built, seconds))}\n` : buildText(built, seconds));
@@ -59,14 +75,31 @@ function checkNoFileLeftOut(study: Study, where: string, tallied: Set<string>): 
   }
   const missing = files.find(({ name }) => !tallied.has(name));
   if (missing) {
-    throw new InputError(`${where}: events.files`, `${missing.name} is in no part`, 'tally it and name its part too, or narrow events.files');
+    throw new InputError(
+      `${where}: events.files`,
+      `${missing.name} is in no part`,
+      'tally it and name its part too, or narrow events.files',
+    );
   }
 }
 
 function buildJson({ out, manifest, contents }: BuiltBundle, seconds: number): unknown {
   const { ledger, columns, outcomes, flags, study, seed, replicas, files, title } = manifest;
   const raised = contents.audit.flags.filter(({ state }) => state !== 'clear');
-  return { bundle: out, title, fingerprint: study.fingerprint, ledger, columns, outcomes, flags, raised, seed, replicas, files, seconds };
+  return {
+    bundle: out,
+    title,
+    fingerprint: study.fingerprint,
+    ledger,
+    columns,
+    outcomes,
+    flags,
+    raised,
+    seed,
+    replicas,
+    files,
+    seconds,
+  };
 }
 
 function buildText({ out, manifest, contents }: BuiltBundle, seconds: number): string {

@@ -33,13 +33,20 @@ function writeNew(path: string, text: string): void {
   writeFileSync(path, text);
 }
 
-function inspectText(facts: FileFacts[], { reasons, study }: ProposedStudy, written: string | undefined, text: string): string {
+function inspectText(
+  facts: FileFacts[],
+  { reasons, study }: ProposedStudy,
+  written: string | undefined,
+  text: string,
+): string {
   const lines = facts.flatMap((file) => [
     `${file.path}: ${file.format}, ${formatCount(file.bytes)} bytes, ${formatCount(file.rows)} rows, ${formatCount(file.rejected)} unreadable`,
     ...columnLines(file.columns),
     '',
   ]);
-  const roles = Object.entries(study.roles).map(([role, column]) => `  ${role}: ${column} (by ${reasons[role as keyof typeof reasons]})`);
+  const roles = Object.entries(study.roles).map(
+    ([role, column]) => `  ${role}: ${column} (by ${reasons[role as keyof typeof reasons]})`,
+  );
   lines.push('proposed roles', ...roles, '');
   if (written) lines.push(`starting study: ${written}`, `next: entasis build ${written}`);
   else lines.push('starting study (--study PATH writes it):', text.trimEnd());
@@ -47,13 +54,18 @@ function inspectText(facts: FileFacts[], { reasons, study }: ProposedStudy, writ
 }
 
 function columnLines(columns: ColumnFacts[]): string[] {
-  const rows = [['column', 'type', 'missing', 'non-finite', 'least', 'greatest'], ...columns.map(columnRow)];
+  const rows = [
+    ['column', 'type', 'missing', 'malformed', 'non-finite', 'least', 'greatest'],
+    ...columns.map(columnRow),
+  ];
   const widths = rows[0]!.map((_, c) => Math.max(...rows.map((row) => row[c]!.length)));
-  return rows.map((row) => `  ${row.map((cell, c) => (c < 2 ? cell.padEnd(widths[c]!) : cell.padStart(widths[c]!))).join('  ')}`.trimEnd());
+  return rows.map((row) =>
+    `  ${row.map((cell, c) => (c < 2 ? cell.padEnd(widths[c]!) : cell.padStart(widths[c]!))).join('  ')}`.trimEnd(),
+  );
 }
 
-function columnRow({ name, type, missing, nonFinite, least, greatest, labels }: ColumnFacts): string[] {
+function columnRow({ name, type, missing, malformed, nonFinite, least, greatest, labels }: ColumnFacts): string[] {
   const end = (x: number | null): string => (x === null ? '-' : formatNumber(x, 6));
   const kind = type === 'text' && labels ? `text, ${labels.length} labels` : type;
-  return [name, kind, formatCount(missing), formatCount(nonFinite), end(least), end(greatest)];
+  return [name, kind, formatCount(missing), formatCount(malformed), formatCount(nonFinite), end(least), end(greatest)];
 }

@@ -18,7 +18,15 @@ export async function tally(
   const files = flags.files && expandFiles(flags.files, folder, '--files', 'pattern');
   const line = new ProgressLine();
   const onProgress = line.show.bind(line);
-  const reading = await readEvents({ study, folder, where: path, ...(files && { files }), ...around, workers: flags.workers, onProgress });
+  const reading = await readEvents({
+    study,
+    folder,
+    where: path,
+    ...(files && { files }),
+    ...around,
+    workers: flags.workers,
+    onProgress,
+  });
   try {
     writePart(flags.out, reading);
     line.clear();

@@ -24,7 +24,13 @@ export function flagLines(flags: readonly Flag[]): string[] {
   return (['flagged', 'undecided'] as const).flatMap((state) => {
     const raised = flags.filter((flag) => flag.state === state);
     const ids = [...new Set(raised.map(({ id }) => id))];
-    return ids.flatMap((id) => groupLines(state, id, raised.filter((flag) => flag.id === id)));
+    return ids.flatMap((id) =>
+      groupLines(
+        state,
+        id,
+        raised.filter((flag) => flag.id === id),
+      ),
+    );
   });
 }
 

@@ -83,7 +83,7 @@ function readDoubles(path: string, from: number, length: number): Float64Array {
   const bytes = new Uint8Array(values.buffer);
   const file = openSync(path, 'r');
   try {
-    for (let done = 0; done < bytes.length; ) {
+    for (let done = 0; done < bytes.length;) {
       const got = readSync(file, bytes, done, bytes.length - done, from + done);
       if (got === 0) throw new InputError(path, 'ends before its last replica', 'build the bundle again');
       done += got;

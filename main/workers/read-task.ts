@@ -192,7 +192,7 @@ function linesBefore(path: string, start: number): number {
   const end = start - 1;
   let lines = 1;
   try {
-    for (let at = 0; at < end; ) {
+    for (let at = 0; at < end;) {
       const got = readSync(file, block, 0, Math.min(block.length, end - at), at);
       if (got === 0) break;
       for (let i = 0; i < got; i++) if (block[i] === NEWLINE) lines++;

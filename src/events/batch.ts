@@ -75,6 +75,8 @@ export interface ColumnFacts {
   name: string;
   type: 'number' | 'text';
   missing: number;
+  /** Values of a column of numbers that are none: `build` rejects their rows. 0 in a column of texts. */
+  malformed: number;
   nonFinite: number;
   /** Least and greatest finite value, `null` for text and for columns without one. */
   least: number | null;

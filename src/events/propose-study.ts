@@ -70,6 +70,7 @@ function joinFacts(a: ColumnFacts, b: ColumnFacts): ColumnFacts {
     name: a.name,
     type: a.type === 'number' && b.type === 'number' ? 'number' : 'text',
     missing: a.missing + b.missing,
+    malformed: a.malformed + b.malformed,
     nonFinite: a.nonFinite + b.nonFinite,
     least: ends(Math.min, a.least, b.least),
     greatest: ends(Math.max, a.greatest, b.greatest),
@@ -110,6 +111,14 @@ function proposeRoles(columns: ColumnFacts[], where: string) {
     take('true', byName('true', isAxis), named) ?? take('true', free().find(isAxis), 'the first column left');
   const reco =
     take('reconstructed', byName('reconstructed', isAxis), named) ??
+    take(
+      'reconstructed',
+      mostAlike(
+        columns.find(({ name }) => name === truth),
+        free(),
+      ),
+      'a range like that of the true value',
+    ) ??
     take('reconstructed', free().find(isAxis), 'the first column left');
   if (truth === undefined || reco === undefined) {
     const known = columns.map(({ name }) => name).join(', ') || 'none';
@@ -128,6 +137,19 @@ function proposeRoles(columns: ColumnFacts[], where: string) {
 
 function isNumber(column: ColumnFacts): boolean {
   return column.type === 'number' && column.least !== null;
+}
+
+/** The column of numbers whose range overlaps that of the true value the most. */
+function mostAlike(truth: ColumnFacts | undefined, columns: ColumnFacts[]): ColumnFacts | undefined {
+  if (!truth || !isNumber(truth)) return undefined;
+  const alike = columns.filter(isNumber).map((column) => ({ column, share: overlap(truth, column) }));
+  return alike.filter(({ share }) => share > 0).sort((a, b) => b.share - a.share)[0]?.column;
+}
+
+/** What two ranges share, over what they span together. */
+function overlap(a: ColumnFacts, b: ColumnFacts): number {
+  const shared = Math.min(a.greatest!, b.greatest!) - Math.max(a.least!, b.least!);
+  return shared / (Math.max(a.greatest!, b.greatest!) - Math.min(a.least!, b.least!));
 }
 
 /** Most labels of a text column that is proposed as an axis of tags. */

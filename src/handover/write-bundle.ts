@@ -1,5 +1,6 @@
+import type { Audit } from '../audit/audit';
 import type { Flag } from '../audit/flag';
-import { isAbsent, type Measure } from '../audit/measure';
+import { isAbsent } from '../audit/measure';
 import { BLOCK } from '../ensemble/draw';
 import type { Posterior } from '../posterior/posterior';
 import type { Summary } from '../posterior/summary';
@@ -12,12 +13,6 @@ import { csvRow, csvTable } from './csv-table';
 import type { FolderInTheMaking } from './folder-in-the-making';
 import { BUNDLE_SCHEMA, type Manifest } from './manifest';
 
-/** The audit as `audit.json` holds it. */
-export interface BundleAudit {
-  measures: { columns: Record<string, Measure>; bins: Record<string, Measure>; matrix: Record<string, Measure> };
-  flags: Flag[];
-}
-
 /** Everything a bundle holds besides the ensemble. */
 export interface BundleContents {
   version: string;
@@ -27,7 +22,7 @@ export interface BundleContents {
   tally: Tally;
   posterior: Posterior;
   summary: Summary;
-  audit: BundleAudit;
+  audit: Audit;
   rejectedRows: Iterable<{ file: string; place: number; column: string | null; value: string | null; reason: string }>;
 }
 
@@ -100,7 +95,8 @@ function writeTally(folder: FolderInTheMaking, tally: Tally): void {
   const [columns, outcomes] = [tally.columnNames.length, tally.outcomeNames.length];
   const put = (name: string, ofWeights: string, cells: Cells, shape: number[], axes: string[]): void => {
     folder.array(`tally/${name}.npy`, '<i8', shape, cells.events, axes, 'events');
-    if (cells.weights) folder.array(`tally/${ofWeights}weights.npy`, '<f8', shape, cells.weights, axes, 'sum of weights');
+    if (cells.weights)
+      folder.array(`tally/${ofWeights}weights.npy`, '<f8', shape, cells.weights, axes, 'sum of weights');
     if (cells.squares) {
       folder.array(`tally/${ofWeights}squares.npy`, '<f8', shape, cells.squares, axes, 'sum of squared weights');
     }

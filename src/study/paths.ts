@@ -14,7 +14,12 @@ export interface NamedFile {
  * A name that is a file is taken literally, even if it reads like a glob. Throws `InputError` where a path or glob
  * names nothing.
  */
-export function expandFiles(patterns: readonly string[], folder: string, where: string, key = 'events.files'): NamedFile[] {
+export function expandFiles(
+  patterns: readonly string[],
+  folder: string,
+  where: string,
+  key = 'events.files',
+): NamedFile[] {
   const found = new Map<string, NamedFile>();
   patterns.forEach((pattern, i) => {
     const at = `${where}: ${key}[${i}]`;
@@ -35,7 +40,12 @@ function filesOf(pattern: string, folder: string, at: string): string[] {
     return [literal];
   }
   if (!isDynamicPattern(pattern)) throw new InputError(at, `no file "${pattern}"`, `look for it beside ${folder}`);
-  const paths = globSync(pattern.split(sep).join('/'), { cwd: folder, absolute: true, expandDirectories: false, dot: false });
+  const paths = globSync(pattern.split(sep).join('/'), {
+    cwd: folder,
+    absolute: true,
+    expandDirectories: false,
+    dot: false,
+  });
   if (paths.length === 0) throw new InputError(at, `no file matches "${pattern}"`, `look for it beside ${folder}`);
   return paths.map((path) => resolve(path));
 }

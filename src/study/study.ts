@@ -204,15 +204,24 @@ function checkAxis(axis: AxisDocument, where: string, path: string): void {
   if ('tags' in axis) {
     const repeated = axis.tags.findIndex((tag, i) => axis.tags.indexOf(tag) !== i);
     if (repeated >= 0) {
-      throw new InputError(`${where}: ${path}.tags[${repeated}]`, `tag "${axis.tags[repeated]}" repeats`, 'list it once');
+      throw new InputError(
+        `${where}: ${path}.tags[${repeated}]`,
+        `tag "${axis.tags[repeated]}" repeats`,
+        'list it once',
+      );
     }
     return;
   }
   if ('edges' in axis) {
     const bad = axis.edges.findIndex((edge, i) => i > 0 && !(edge > axis.edges[i - 1]!));
     if (bad > 0) {
-      const how = axis.edges[bad] === axis.edges[bad - 1] ? 'repeats the edge before it' : 'is below the edge before it';
-      throw new InputError(`${where}: ${path}.edges[${bad}]`, `edge ${axis.edges[bad]} ${how}`, 'list increasing edges');
+      const how =
+        axis.edges[bad] === axis.edges[bad - 1] ? 'repeats the edge before it' : 'is below the edge before it';
+      throw new InputError(
+        `${where}: ${path}.edges[${bad}]`,
+        `edge ${axis.edges[bad]} ${how}`,
+        'list increasing edges',
+      );
     }
   } else if (!(axis.to > axis.from)) {
     throw new InputError(`${where}: ${path}.to`, `${axis.to} is not above from (${axis.from})`, 'give to > from');
@@ -232,7 +241,11 @@ function checkCuts(cuts: Cut[], where: string): void {
   cuts.forEach((cut, i) => {
     const path = `${where}: cuts[${i}].value`;
     if ((cut.is === 'in') !== Array.isArray(cut.value)) {
-      throw new InputError(path, `"${cut.is}" with ${Array.isArray(cut.value) ? 'a list' : 'a single value'}`, 'use "in" with a list, the other comparisons with one value');
+      throw new InputError(
+        path,
+        `"${cut.is}" with ${Array.isArray(cut.value) ? 'a list' : 'a single value'}`,
+        'use "in" with a list, the other comparisons with one value',
+      );
     }
     if (Array.isArray(cut.value) && new Set(cut.value.map((v) => typeof v)).size > 1) {
       throw new InputError(path, 'numbers and texts in one list', 'list one kind only');
@@ -254,6 +267,10 @@ function checkReference(reference: Reference, where: string): void {
     throw new InputError(`${where}: reference.${key}`, `missing for the kind "${reference.kind}"`, 'add it');
   }
   if (reference.from !== undefined && reference.to !== undefined && !(reference.to > reference.from)) {
-    throw new InputError(`${where}: reference.to`, `${reference.to} is not above from (${reference.from})`, 'give to > from');
+    throw new InputError(
+      `${where}: reference.to`,
+      `${reference.to} is not above from (${reference.from})`,
+      'give to > from',
+    );
   }
 }

@@ -25,11 +25,7 @@ export class CellSums {
   }
 
   static fromPlain({ events, weights, squares }: PlainCellSums): CellSums {
-    return new CellSums(
-      events,
-      weights && ExactSums.fromParts(weights),
-      squares && ExactSums.fromParts(squares),
-    );
+    return new CellSums(events, weights && ExactSums.fromParts(weights), squares && ExactSums.fromParts(squares));
   }
 
   /** One event of weight `w` (1 where unweighted). */

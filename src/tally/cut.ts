@@ -8,7 +8,9 @@ export type CutTest = (column: Column, rows: number, pass: Uint8Array) => void;
 export function cutTests(cuts: readonly Cut[]): CutTest[] {
   return cuts.map((cut) => {
     const values = Array.isArray(cut.value) ? cut.value : [cut.value];
-    return typeof values[0] === 'string' ? textTest(cut.is, values as string[]) : numberTest(cut.is, values as number[]);
+    return typeof values[0] === 'string'
+      ? textTest(cut.is, values as string[])
+      : numberTest(cut.is, values as number[]);
   });
 }
 

@@ -160,7 +160,8 @@ export class Selection {
     if (t === UNLISTED && trueAxis.kind === 'tags') throw unlistedTag(batch, at.true, 'true', i, placeOf);
     if (Math.abs(t) === Infinity) return fault(at.true, t, 'true value not finite');
     if (Number.isNaN(r) && !lostRecorded) return fault(at.reconstructed, r, 'no reconstructed value');
-    if (r === UNLISTED && recoAxis.kind === 'tags') throw unlistedTag(batch, at.reconstructed, 'reconstructed', i, placeOf);
+    if (r === UNLISTED && recoAxis.kind === 'tags')
+      throw unlistedTag(batch, at.reconstructed, 'reconstructed', i, placeOf);
     if (Math.abs(r) === Infinity) return fault(at.reconstructed, r, 'reconstructed value not finite');
     if (weight && !isWeight(weight[i]!)) {
       return fault(at.weight, weight[i]!, Number.isNaN(weight[i]) ? 'no weight' : 'weight out of range');
@@ -226,7 +227,13 @@ function valuesOf(column: Column, axis: Axis): Float64Array {
   return Float64Array.from(codes, (code) => (code < 0 ? NaN : ofCode[code]!));
 }
 
-function unlistedTag(batch: Batch, need: number, axis: string, i: number, placeOf: (place: number) => string): InputError {
+function unlistedTag(
+  batch: Batch,
+  need: number,
+  axis: string,
+  i: number,
+  placeOf: (place: number) => string,
+): InputError {
   const { labels, codes } = batch.columns[need] as TextColumn;
   return new InputError(
     placeOf(batch.places[i]!),

@@ -182,7 +182,11 @@ export class TallySums {
     const labels = this.sortedRuns();
     const length = this.columns * this.outcomes;
     const joined = (): Float64Array => new Float64Array(labels.length * length);
-    const cells = { events: joined(), weights: this.weighted ? joined() : null, squares: this.weighted ? joined() : null };
+    const cells = {
+      events: joined(),
+      weights: this.weighted ? joined() : null,
+      squares: this.weighted ? joined() : null,
+    };
     labels.forEach((label, r) => {
       const run = this.runs.get(label)!.finish();
       cells.events.set(run.events, r * length);

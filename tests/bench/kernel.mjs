@@ -12,7 +12,10 @@ export async function kernelSeconds(bundle, replicas, workers) {
   new Uint8Array(shape.buffer).set(bytes.subarray(bytes.length - length * 8));
   const parameters = { columns: columns.length, outcomes: outcomes.length, shape, scale: null };
   const begin = { parameters, seed: 1, replicas };
-  const lanes = Array.from({ length: workers }, () => new Worker(new URL('../../out/main/draw-worker.js', import.meta.url)));
+  const lanes = Array.from(
+    { length: workers },
+    () => new Worker(new URL('../../out/main/draw-worker.js', import.meta.url)),
+  );
   await Promise.all(lanes.map((lane) => call(lane, 'begin', begin)));
   const rooms = lanes.map(() => new SharedArrayBuffer(BLOCK * length * 8));
   let best = Infinity;

@@ -70,17 +70,37 @@ async function csvTally(peer) {
   const ours = entasis('tally', study, '--out', at('events.part'));
   const theirs = peer
     ? python('tally', at('events.csv'), at('edges.json'), at('counts.npy'))
-    : { command: process.execPath, args: [fileURLToPath(new URL('./duckdb-peer.mjs', import.meta.url)), at('events.csv'), at('edges.json')] };
+    : {
+        command: process.execPath,
+        args: [fileURLToPath(new URL('./duckdb-peer.mjs', import.meta.url)), at('events.csv'), at('edges.json')],
+      };
   const { ratio, ours: a, theirs: b, peak } = await inTurn(ours, theirs, RUNS);
   const size = number(statSync(at('events.csv')).size / 1e6, 0);
-  report(`tally of a ${ROWS / 1e6} M-row CSV (${size} MB), whole process`, `${number(a)} s`, `${number(b)} s`, number(ratio), `peak ${number(peak.ours, 0)} MB, peer ${number(peak.theirs, 0)} MB`);
+  report(
+    `tally of a ${ROWS / 1e6} M-row CSV (${size} MB), whole process`,
+    `${number(a)} s`,
+    `${number(b)} s`,
+    number(ratio),
+    `peak ${number(peak.ours, 0)} MB, peer ${number(peak.theirs, 0)} MB`,
+  );
   return study;
 }
 
 async function ensemble(study) {
   const ours = entasis('build', study, '--from', at('events.part'), '--out', at('events.bundle'));
-  const { ratio, ours: a, theirs: b, peak } = await inTurn(ours, python('ensemble', at('counts.npy'), '1942', at('replicas.npy')), RUNS);
-  report('ensemble of 20 M cells to disk with its whole bundle, whole process', `${number(a)} s`, `${number(b)} s`, number(ratio), `peak ${number(peak.ours, 0)} MB, peer ${number(peak.theirs, 0)} MB`);
+  const {
+    ratio,
+    ours: a,
+    theirs: b,
+    peak,
+  } = await inTurn(ours, python('ensemble', at('counts.npy'), '1942', at('replicas.npy')), RUNS);
+  report(
+    'ensemble of 20 M cells to disk with its whole bundle, whole process',
+    `${number(a)} s`,
+    `${number(b)} s`,
+    number(ratio),
+    `peak ${number(peak.ours, 0)} MB, peer ${number(peak.theirs, 0)} MB`,
+  );
 }
 
 async function kernel() {
@@ -89,7 +109,12 @@ async function kernel() {
   const theirs = Number((await wholeProcess(PYTHON, [PEER, 'kernel', at('counts.npy'), String(replicas)])).output);
   for (const workers of [1, 2]) {
     const ours = await kernelSeconds(at('events.bundle'), replicas, workers);
-    report(`sampling kernel, ${workers} worker${workers > 1 ? 's' : ''}`, `${number(cells / ours / 1e6, 0)} Mcell/s`, `${number(cells / theirs / 1e6, 0)} Mcell/s`, number(theirs / ours));
+    report(
+      `sampling kernel, ${workers} worker${workers > 1 ? 's' : ''}`,
+      `${number(cells / ours / 1e6, 0)} Mcell/s`,
+      `${number(cells / theirs / 1e6, 0)} Mcell/s`,
+      number(theirs / ours),
+    );
   }
 }
 
@@ -101,7 +126,13 @@ async function parquet(count) {
   const { command, args } = entasis('tally', study, '--out', at('parquet.part'), '--json');
   await wholeProcess(command, args);
   const { seconds, peak } = await wholeProcess(command, args);
-  report(`tally of ${count / 1e6} M rows of Parquet, whole process`, `${number(seconds)} s = ${number(count / seconds / 1e6, 1)} Mrow/s`, '-', '-', `peak ${number(peak, 0)} MB`);
+  report(
+    `tally of ${count / 1e6} M rows of Parquet, whole process`,
+    `${number(seconds)} s = ${number(count / seconds / 1e6, 1)} Mrow/s`,
+    '-',
+    '-',
+    `peak ${number(peak, 0)} MB`,
+  );
 }
 
 async function largeEnsemble(study) {
@@ -109,9 +140,22 @@ async function largeEnsemble(study) {
   const document = JSON.parse(readFileSync(study, 'utf8'));
   document.ensemble.replicas = replicas;
   writeFileSync(at('large.study.json'), JSON.stringify(document));
-  const { command, args } = entasis('build', at('large.study.json'), '--from', at('events.part'), '--out', at('large.bundle'));
+  const { command, args } = entasis(
+    'build',
+    at('large.study.json'),
+    '--from',
+    at('events.part'),
+    '--out',
+    at('large.bundle'),
+  );
   const { seconds, peak } = await wholeProcess(command, args);
-  report('ensemble of 8 GB, whole process', `${number(seconds, 1)} s = ${number(8000 / seconds, 0)} MB/s`, '-', '-', `peak ${number(peak, 0)} MB`);
+  report(
+    'ensemble of 8 GB, whole process',
+    `${number(seconds, 1)} s = ${number(8000 / seconds, 0)} MB/s`,
+    '-',
+    '-',
+    `peak ${number(peak, 0)} MB`,
+  );
 }
 
 console.log(`${availableParallelism()} processors, Node ${process.version}`);

@@ -61,11 +61,19 @@ describe('bad input ends with exit 2 and one line that says where, what and what
   const cases: [string, Change, RegExp][] = [
     ['an unknown key', (s) => (s.colour = 1), /^x\.study\.json: colour: unknown key/],
     ['unsorted edges', (s) => (s.axes.true = { edges: [0, 3, 2] }), /^x\.study\.json: axes\.true\.edges\[2\]/],
-    ['repeated edges', (s) => (s.axes.true = { edges: [0, 3, 3] }), /^x\.study\.json: axes\.true\.edges\[2\]: edge 3 repeats/],
+    [
+      'repeated edges',
+      (s) => (s.axes.true = { edges: [0, 3, 3] }),
+      /^x\.study\.json: axes\.true\.edges\[2\]: edge 3 repeats/,
+    ],
     ['a missing column', (s) => (s.roles.true = 'energy'), /^events\.csv: no column "energy": the columns are t, r, n/],
     ['no file', (s) => (s.events.files = ['none.csv']), /^x\.study\.json: events\.files\[0\]: no file "none\.csv"/],
     ['negative replicas', (s) => (s.ensemble.replicas = -1), /^x\.study\.json: ensemble\.replicas: /],
-    ['a prior of zero with unseen outcomes', (s) => (s.prior = { pseudoCount: 0 }), /^x\.study\.json: prior: a prior of zero, but column /],
+    [
+      'a prior of zero with unseen outcomes',
+      (s) => (s.prior = { pseudoCount: 0 }),
+      /^x\.study\.json: prior: a prior of zero, but column /,
+    ],
   ];
   it.each(cases)('%s', async (_, change, message) => {
     expect(await refusal(change)).toMatch(message);
@@ -87,7 +95,9 @@ describe('bad input ends with exit 2 and one line that says where, what and what
   });
 
   it('all rows cut', async () => {
-    expect(await refusal((s) => (s.cuts = [{ column: 'n', is: '>', value: 1000 }]))).toMatch(/^events\.csv: all of 50 rows were cut/);
+    expect(await refusal((s) => (s.cuts = [{ column: 'n', is: '>', value: 1000 }]))).toMatch(
+      /^events\.csv: all of 50 rows were cut/,
+    );
   });
 
   it('a wrong delimiter', async () => {
@@ -96,31 +106,45 @@ describe('bad input ends with exit 2 and one line that says where, what and what
   });
 
   it('a binary file', async () => {
-    put('events.csv', Uint8Array.from({ length: 4096 }, (_, i) => (i * 37) % 251));
+    put(
+      'events.csv',
+      Uint8Array.from({ length: 4096 }, (_, i) => (i * 37) % 251),
+    );
     expect(await refusal()).toMatch(/^events\.csv: /);
   });
 
   it('a truncated gzip, with the place of the damage', async () => {
-    const whole = gzipSync(['t,r', ...Array.from({ length: 20_000 }, (_, i) => `${(i * 7) % 10}.${i},${(i * 13) % 9}.${i}`), ''].join('\n'));
+    const whole = gzipSync(
+      ['t,r', ...Array.from({ length: 20_000 }, (_, i) => `${(i * 7) % 10}.${i},${(i * 13) % 9}.${i}`), ''].join('\n'),
+    );
     put('events.csv.gz', whole.subarray(0, whole.length - 2000));
     expect(await refusal((s) => (s.events.files = ['events.csv.gz']))).toMatch(/^events\.csv\.gz: .*byte \d+/);
   });
 
   it('a corrupt gzip', async () => {
-    const whole = gzipSync(['t,r', ...Array.from({ length: 20_000 }, (_, i) => `${(i * 7) % 10}.${i},${(i * 13) % 9}.${i}`), ''].join('\n'));
+    const whole = gzipSync(
+      ['t,r', ...Array.from({ length: 20_000 }, (_, i) => `${(i * 7) % 10}.${i},${(i * 13) % 9}.${i}`), ''].join('\n'),
+    );
     whole[Math.floor(whole.length / 2)]! ^= 0xff;
     put('events.csv.gz', whole);
     expect(await refusal((s) => (s.events.files = ['events.csv.gz']))).toMatch(/^events\.csv\.gz: .*byte \d+/);
   });
 
   it('ten thousand runs', async () => {
-    put('events.csv', ['t,r,run', ...Array.from({ length: 10_000 }, (_, i) => `${i % 10}.5,${i % 10}.5,run-${i}`), ''].join('\n'));
-    expect(await refusal((s) => (s.roles.run = 'run'))).toMatch(/^roles\.run: column "run" has more than 1000 labels: /);
+    put(
+      'events.csv',
+      ['t,r,run', ...Array.from({ length: 10_000 }, (_, i) => `${i % 10}.5,${i % 10}.5,run-${i}`), ''].join('\n'),
+    );
+    expect(await refusal((s) => (s.roles.run = 'run'))).toMatch(
+      /^roles\.run: column "run" has more than 1000 labels: /,
+    );
   });
 
   it('a tag that is not listed, by line', async () => {
     put('events.csv', 't,r\npion,1\nmuon,2\n');
-    expect(await refusal((s) => (s.axes.true = { tags: ['pion', 'electron'] }))).toMatch(/^events\.csv:3: tag "muon" is not in axes\.true\.tags: /);
+    expect(await refusal((s) => (s.axes.true = { tags: ['pion', 'electron'] }))).toMatch(
+      /^events\.csv:3: tag "muon" is not in axes\.true\.tags: /,
+    );
   });
 
   it('a place that holds something else', async () => {
@@ -133,13 +157,17 @@ describe('bad input ends with exit 2 and one line that says where, what and what
   });
 
   it('a folder that cannot be written, even by root: a place inside a file', async () => {
-    expect(await refusal(undefined, '--out', file('events.csv/x.bundle'))).toMatch(/^events\.csv\/x\.bundle: cannot be written \(\w+\): /);
+    expect(await refusal(undefined, '--out', file('events.csv/x.bundle'))).toMatch(
+      /^events\.csv\/x\.bundle: cannot be written \(\w+\): /,
+    );
   });
 
   it.skipIf(process.getuid?.() === 0)('a folder that this user may not write to', async () => {
     mkdirSync(file('closed'));
     chmodSync(file('closed'), 0o500);
-    expect(await refusal(undefined, '--out', file('closed/x.bundle'))).toMatch(/^closed\/x\.bundle: cannot be written \(EACCES\): /);
+    expect(await refusal(undefined, '--out', file('closed/x.bundle'))).toMatch(
+      /^closed\/x\.bundle: cannot be written \(EACCES\): /,
+    );
   });
 
   it.skipIf(!existsSync('/dev/full'))('a disk without room', async () => {
@@ -151,17 +179,23 @@ describe('bad input ends with exit 2 and one line that says where, what and what
       try {
         writeWhole(full, new Uint8Array(1));
       } catch (cause) {
-        expect(cannotWrite('x.bundle', cause).message).toBe('x.bundle: no space left: make room on the disk or choose another place');
+        expect(cannotWrite('x.bundle', cause).message).toBe(
+          'x.bundle: no space left: make room on the disk or choose another place',
+        );
       }
     } finally {
       closeSync(full);
     }
   });
 
-  it.each([[['build']], [['bogus']], [['build', 'a', 'b', 'c']], [['build', 'x', '--workers', '0']], [['build', 'x', '--speed']], [[]]])(
-    'a usage error: %j',
-    async (args) => {
-      expect(await refused(...args)).toMatch(/^usage: .*: see entasis --help$/);
-    },
-  );
+  it.each([
+    [['build']],
+    [['bogus']],
+    [['build', 'a', 'b', 'c']],
+    [['build', 'x', '--workers', '0']],
+    [['build', 'x', '--speed']],
+    [[]],
+  ])('a usage error: %j', async (args) => {
+    expect(await refused(...args)).toMatch(/^usage: .*: see entasis --help$/);
+  });
 });

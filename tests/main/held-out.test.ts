@@ -45,7 +45,9 @@ const cells = columns * outcomes;
 
 /** Every file of a bundle by name, as text of its bytes. */
 function bytesOf(path: string): Record<string, string> {
-  const names = readdirSync(path, { recursive: true }).map(String).filter((name) => statSync(join(path, name)).isFile());
+  const names = readdirSync(path, { recursive: true })
+    .map(String)
+    .filter((name) => statSync(join(path, name)).isFile());
   return Object.fromEntries(names.sort().map((name) => [name, readFileSync(join(path, name), 'base64')]));
 }
 
@@ -122,7 +124,9 @@ describe('the same bytes', () => {
     writeFileSync(folder.path('more.study.json'), study({ ensemble: { replicas: REPLICAS + 37, seed: 7 } }));
     await entasis('build', folder.path('more.study.json'), '--out', folder.path('more.bundle'));
     const more = readNpy(join(folder.path('more.bundle'), 'replicas.npy')).values;
-    expect(Buffer.from(more.buffer, more.byteOffset, REPLICAS * cells * 8).equals(Buffer.from(array('replicas.npy').buffer))).toBe(true);
+    expect(
+      Buffer.from(more.buffer, more.byteOffset, REPLICAS * cells * 8).equals(Buffer.from(array('replicas.npy').buffer)),
+    ).toBe(true);
   });
 });
 
@@ -148,6 +152,8 @@ describe('verify', () => {
     writeFileSync(join(path, 'manifest.json'), JSON.stringify(manifest));
     const byDrawing = await entasis('verify', path);
     expect(byDrawing.status).toBe(1);
-    expect(byDrawing.out).toMatch(/FAILS: every replica is what seed and tally give, to the bit \(replica 1996, column /);
+    expect(byDrawing.out).toMatch(
+      /FAILS: every replica is what seed and tally give, to the bit \(replica 1996, column /,
+    );
   });
 });

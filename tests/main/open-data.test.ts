@@ -15,7 +15,10 @@ const folder = ownFolder();
 afterAll(folder.remove);
 
 const build = async (name: string, study: object): Promise<{ counts: number[][]; manifest: any }> => {
-  writeFileSync(folder.path(`${name}.study.json`), JSON.stringify({ schema: 'entasis.study/1', ensemble: { replicas: 10 }, ...study }));
+  writeFileSync(
+    folder.path(`${name}.study.json`),
+    JSON.stringify({ schema: 'entasis.study/1', ensemble: { replicas: 10 }, ...study }),
+  );
   const bundle = folder.path(`${name}.bundle`);
   const { status, err } = await entasis('build', folder.path(`${name}.study.json`), '--out', bundle);
   expect(status, err).toBe(0);
@@ -43,7 +46,9 @@ describe('open data', () => {
     const expected = counts.map((row) => row.map(() => 0));
     table({
       j: rated.map((film) => place(trueEdges, film['Rotten Tomatoes Rating'])),
-      k: rated.map((film) => (film['IMDB Rating'] === null ? recoEdges.length + 1 : place(recoEdges, film['IMDB Rating']))),
+      k: rated.map((film) =>
+        film['IMDB Rating'] === null ? recoEdges.length + 1 : place(recoEdges, film['IMDB Rating']),
+      ),
     })
       .groupby('j', 'k')
       .rollup({ n: op.count() })
@@ -53,7 +58,11 @@ describe('open data', () => {
         expected[j]![k] = n;
       });
     expect(counts).toEqual(expected);
-    expect(manifest.ledger).toMatchObject({ read: films.length, tallied: rated.length, reasons: { 'no true value': films.length - rated.length } });
+    expect(manifest.ledger).toMatchObject({
+      read: films.length,
+      tallied: rated.length,
+      reasons: { 'no true value': films.length - rated.length },
+    });
   });
 
   it('three million flights in Parquet, with cuts on a text column, counted by DuckDB', async () => {
@@ -67,7 +76,8 @@ describe('open data', () => {
       cuts: [{ column: 'origin', is: 'in', value: ['ATL', 'ORD', 'DEN'] }],
     });
     const connection = await (await DuckDBInstance.create(':memory:')).connect();
-    const sql = (column: string, edges: number[]): string => edges.map((edge) => `(${column} >= ${edge})::int`).join(' + ');
+    const sql = (column: string, edges: number[]): string =>
+      edges.map((edge) => `(${column} >= ${edge})::int`).join(' + ');
     const found = await connection.runAndReadAll(
       `select ${sql('distance', trueEdges)} as j, case when delay is null then ${recoEdges.length + 1} else ${sql('delay', recoEdges)} end as k,
        count(*)::int as n from '${parquet}' where origin in ('ATL', 'ORD', 'DEN') group by all`,
@@ -92,7 +102,10 @@ describe('open data', () => {
     const expected = tags.map((tag) => {
       const birds = penguins.filter((bird) => bird['Species'] === tag);
       const of = (k: number): number =>
-        birds.filter((bird) => (bird['Flipper Length (mm)'] === null ? edges.length + 1 : place(edges, bird['Flipper Length (mm)'])) === k).length;
+        birds.filter(
+          (bird) =>
+            (bird['Flipper Length (mm)'] === null ? edges.length + 1 : place(edges, bird['Flipper Length (mm)'])) === k,
+        ).length;
       return Array.from({ length: edges.length + 2 }, (_, k) => of(k));
     });
     expect(counts).toEqual(expected);

@@ -10,7 +10,9 @@ const study = folder.path('parts.study.json');
 const part = (name: string): string => folder.path(`${name}.part`);
 
 function contents(path: string): Record<string, string> {
-  const names = readdirSync(path, { recursive: true }).map(String).filter((name) => statSync(join(path, name)).isFile());
+  const names = readdirSync(path, { recursive: true })
+    .map(String)
+    .filter((name) => statSync(join(path, name)).isFile());
   return Object.fromEntries(names.sort().map((name) => [name, readFileSync(join(path, name), 'base64')]));
 }
 
@@ -47,7 +49,8 @@ beforeAll(async () => {
     }),
   );
   await ok('tally', study, '--out', part('whole'));
-  for (let f = 0; f < FILES; f++) await ok('tally', study, '--files', `runs/${f}.csv`, '--out', part(String(f)), '--workers', '1');
+  for (let f = 0; f < FILES; f++)
+    await ok('tally', study, '--files', `runs/${f}.csv`, '--out', part(String(f)), '--workers', '1');
 });
 afterAll(folder.remove);
 
@@ -77,7 +80,10 @@ describe('parts of a tally', () => {
     const { duplicates } = JSON.parse(readFileSync(folder.path('parts.bundle/manifest.json'), 'utf8'));
     expect(duplicates).toMatchObject({ identities: 5, rows: 5 });
     expect(duplicates.examples[0]).toEqual(['runs/0.csv:2', 'runs/4.csv:2']);
-    const flags = JSON.parse(readFileSync(folder.path('parts.bundle/flags.json'), 'utf8')) as { id: string; state: string }[];
+    const flags = JSON.parse(readFileSync(folder.path('parts.bundle/flags.json'), 'utf8')) as {
+      id: string;
+      state: string;
+    }[];
     expect(flags.find(({ id }) => id === 'duplicate')?.state).toBe('flagged');
   });
 
@@ -87,15 +93,23 @@ describe('parts of a tally', () => {
       expect(status).toBe(2);
       return err;
     };
-    expect(await refused('build', study, '--from', part('0'), part('1'), '--out', folder.path('x'))).toMatch(/runs\/2\.csv is in no part/);
-    expect(await refused('combine', part('0'), part('whole'), '--out', folder.path('x'))).toMatch(/runs\/0\.csv is in .*0\.part too/);
+    expect(await refused('build', study, '--from', part('0'), part('1'), '--out', folder.path('x'))).toMatch(
+      /runs\/2\.csv is in no part/,
+    );
+    expect(await refused('combine', part('0'), part('whole'), '--out', folder.path('x'))).toMatch(
+      /runs\/0\.csv is in .*0\.part too/,
+    );
     const other = folder.path('other.study.json');
     writeFileSync(other, readFileSync(study, 'utf8').replace('"bins":6', '"bins":5'));
-    expect(await refused('build', other, '--from', part('whole'), '--out', folder.path('x'))).toMatch(/are not those of the study/);
+    expect(await refused('build', other, '--from', part('whole'), '--out', folder.path('x'))).toMatch(
+      /are not those of the study/,
+    );
     const array = join(part('4'), 'halves-events.npy');
     const bytes = readFileSync(array);
     bytes[bytes.length - 1]! ^= 1;
     writeFileSync(array, bytes);
-    expect(await refused('combine', part('4'), '--out', folder.path('x'))).toMatch(/halves-events\.npy: its hash is not as it was written/);
+    expect(await refused('combine', part('4'), '--out', folder.path('x'))).toMatch(
+      /halves-events\.npy: its hash is not as it was written/,
+    );
   });
 });

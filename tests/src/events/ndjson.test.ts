@@ -149,9 +149,9 @@ describe('inspecting such a file', () => {
     const { rows, rejected, columns } = await inspectFile(fileOf(text, '.jsonl'));
     expect([rows, rejected]).toEqual([4, 1]);
     expect(columns).toEqual([
-      { name: 't', type: 'number', missing: 1, nonFinite: 0, least: 1, greatest: 2.5, labels: null },
-      { name: 'a', type: 'text', missing: 2, nonFinite: 0, least: null, greatest: null, labels: ['x', 'y'] },
-      { name: 'b', type: 'text', missing: 3, nonFinite: 0, least: null, greatest: null, labels: null },
+      { name: 't', type: 'number', missing: 1, malformed: 0, nonFinite: 0, least: 1, greatest: 2.5, labels: null },
+      { name: 'a', type: 'text', missing: 2, malformed: 0, nonFinite: 0, least: null, greatest: null, labels: ['x', 'y'] },
+      { name: 'b', type: 'text', missing: 3, malformed: 0, nonFinite: 0, least: null, greatest: null, labels: null },
     ]);
   });
 });

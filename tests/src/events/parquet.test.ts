@@ -200,18 +200,19 @@ describe('inspecting a Parquet file', () => {
     const { rows, rejected, format, columns } = await inspectFile(path);
     expect({ rows, rejected, format }).toEqual({ rows: 5000, rejected: 0, format: 'parquet' });
     expect(columns).toEqual([
-      { name: 't', type: 'number', missing: 1, nonFinite: 0, least: 1, greatest: 4999, labels: null },
+      { name: 't', type: 'number', missing: 1, malformed: 0, nonFinite: 0, least: 1, greatest: 4999, labels: null },
       {
         name: 'run',
         type: 'text',
         missing: 0,
+        malformed: 0,
         nonFinite: 0,
         least: null,
         greatest: null,
         labels: ['run 0', 'run 1', 'run 2'],
       },
-      { name: 'w', type: 'number', missing: 0, nonFinite: 1, least: -4999, greatest: 0, labels: null },
-      { name: 'event', type: 'text', missing: 0, nonFinite: 0, least: null, greatest: null, labels: null },
+      { name: 'w', type: 'number', missing: 0, malformed: 0, nonFinite: 1, least: -4999, greatest: 0, labels: null },
+      { name: 'event', type: 'text', missing: 0, malformed: 0, nonFinite: 0, least: null, greatest: null, labels: null },
     ]);
   });
 });

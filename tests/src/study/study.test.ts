@@ -36,25 +36,49 @@ describe('a study document', () => {
 
   const faults: [string, (study: Record<string, any>) => void, RegExp][] = [
     ['an unknown key', (s) => (s['colour'] = 1), /^s: colour: unknown key/],
-    ['an unknown key deep inside', (s) => (s['ensemble'] = { replicas: 1, speed: 2 }), /^s: ensemble\.speed: unknown key/],
+    [
+      'an unknown key deep inside',
+      (s) => (s['ensemble'] = { replicas: 1, speed: 2 }),
+      /^s: ensemble\.speed: unknown key/,
+    ],
     ['an unknown key of an axis', (s) => (s['axes'].true.width = 2), /^s: axes\.true\.width: unknown key/],
     ['another schema', (s) => (s['schema'] = 'entasis.study/2'), /^s: schema: /],
     ['no files', (s) => (s['events'].files = []), /^s: events\.files: /],
     ['a missing role', (s) => delete s['roles'].true, /^s: roles\.true: /],
     ['negative replicas', (s) => (s['ensemble'] = { replicas: -5 }), /^s: ensemble\.replicas: /],
     ['a credibility of 1', (s) => (s['credibility'] = 1), /^s: credibility: /],
-    ['unsorted edges', (s) => (s['axes'].reconstructed.edges = [0, 5, 2]), /^s: axes\.reconstructed\.edges\[2\]: edge 2 is below/],
-    ['repeated edges', (s) => (s['axes'].reconstructed.edges = [0, 5, 5]), /^s: axes\.reconstructed\.edges\[2\]: edge 5 repeats/],
-    ['an edge that is no number', (s) => (s['axes'].reconstructed.edges = [0, 'x']), /^s: axes\.reconstructed\.edges\[1\]: /],
+    [
+      'unsorted edges',
+      (s) => (s['axes'].reconstructed.edges = [0, 5, 2]),
+      /^s: axes\.reconstructed\.edges\[2\]: edge 2 is below/,
+    ],
+    [
+      'repeated edges',
+      (s) => (s['axes'].reconstructed.edges = [0, 5, 5]),
+      /^s: axes\.reconstructed\.edges\[2\]: edge 5 repeats/,
+    ],
+    [
+      'an edge that is no number',
+      (s) => (s['axes'].reconstructed.edges = [0, 'x']),
+      /^s: axes\.reconstructed\.edges\[1\]: /,
+    ],
     ['bins below 1', (s) => (s['axes'].true.bins = 0), /^s: axes\.true\.bins: /],
     ['to not above from', (s) => (s['axes'].true.to = -1), /^s: axes\.true\.to: /],
     ['a log axis from 0', (s) => (s['axes'].true.spacing = 'log'), /^s: axes\.true\.from: 0 on a log axis/],
     ['bins too narrow for a number', (s) => Object.assign(s['axes'].true, { from: 1e16, to: 1e16 + 2 }), /narrower/],
-    ['a repeated tag', (s) => (s['axes'].true = { tags: ['a', 'b', 'a'] }), /^s: axes\.true\.tags\[2\]: tag "a" repeats/],
+    [
+      'a repeated tag',
+      (s) => (s['axes'].true = { tags: ['a', 'b', 'a'] }),
+      /^s: axes\.true\.tags\[2\]: tag "a" repeats/,
+    ],
     ['a negative pseudo-count', (s) => (s['prior'] = { pseudoCount: -1 }), /^s: prior\.pseudoCount: /],
     ['two priors at once', (s) => (s['prior'] = { pseudoCount: 1, pseudoTotal: 1 }), /^s: prior/],
     ['"in" without a list', (s) => (s['cuts'] = [{ column: 'q', is: 'in', value: 1 }]), /^s: cuts\[0\]\.value: "in"/],
-    ['a text compared by size', (s) => (s['cuts'] = [{ column: 'q', is: '<', value: 'x' }]), /^s: cuts\[0\]\.value: text/],
+    [
+      'a text compared by size',
+      (s) => (s['cuts'] = [{ column: 'q', is: '<', value: 'x' }]),
+      /^s: cuts\[0\]\.value: text/,
+    ],
     ['an unknown comparison', (s) => (s['cuts'] = [{ column: 'q', is: '~', value: 1 }]), /^s: cuts\[0\]\.is: /],
     ['an unknown limit', (s) => (s['limits'] = { thick: 1 }), /^s: limits\.thick: unknown key/],
     ['a power law without index', (s) => (s['reference'] = { kind: 'powerLaw' }), /^s: reference\.index: missing/],
@@ -69,7 +93,9 @@ describe('a study document', () => {
   });
 
   it('names the line where its text is no JSON', () => {
-    expect(() => parseStudyText('{\n "schema": "entasis.study/1",\n oops }', 'x.study.json')).toThrow(/^x\.study\.json:3: not valid JSON/);
+    expect(() => parseStudyText('{\n "schema": "entasis.study/1",\n oops }', 'x.study.json')).toThrow(
+      /^x\.study\.json:3: not valid JSON/,
+    );
   });
 });
 
@@ -77,7 +103,10 @@ describe('an axis', () => {
   it('has the edges that numpy.linspace gives, to the bit', () => {
     // numpy 1.24.2: numpy.linspace(-0.3, 1.3, 8).tolist()
     const axis = resolveAxis({ label: '', unit: '', from: -0.3, to: 1.3, bins: 7, spacing: 'linear' });
-    const numpy = [-0.3, -0.0714285714285714, 0.1571428571428572, 0.38571428571428573, 0.6142857142857143, 0.842857142857143, 1.0714285714285714, 1.3];
+    const numpy = [
+      -0.3, -0.0714285714285714, 0.1571428571428572, 0.38571428571428573, 0.6142857142857143, 0.842857142857143,
+      1.0714285714285714, 1.3,
+    ];
     expect(axis.kind === 'numeric' && [...axis.edges]).toEqual(numpy);
   });
 

@@ -11,7 +11,8 @@ const placesOf = (edges: number[], values: number[]): number[] => {
 };
 
 /** The definition, one edge at a time. */
-const byDefinition = (edges: number[], x: number): number => (Number.isNaN(x) ? -1 : edges.filter((edge) => x >= edge).length);
+const byDefinition = (edges: number[], x: number): number =>
+  Number.isNaN(x) ? -1 : edges.filter((edge) => x >= edge).length;
 
 describe('a binner', () => {
   it('takes bins as [lo, hi): an edge belongs to the bin above it, the top edge is above', () => {
@@ -22,12 +23,20 @@ describe('a binner', () => {
 
   it('agrees with the definition on any edges and any values, edges and their neighbours included', () => {
     const edgeLists = fc
-      .uniqueArray(fc.double({ noNaN: true, noDefaultInfinity: true, min: -1e300, max: 1e300 }), { minLength: 2, maxLength: 60 })
+      .uniqueArray(fc.double({ noNaN: true, noDefaultInfinity: true, min: -1e300, max: 1e300 }), {
+        minLength: 2,
+        maxLength: 60,
+      })
       .map((edges) => edges.map((edge) => edge + 0).sort((a, b) => a - b))
       .filter((edges) => new Set(edges).size === edges.length);
     fc.assert(
       fc.property(edgeLists, fc.array(fc.double(), { maxLength: 40 }), (edges, values) => {
-        const all = [...values, ...edges, ...edges.map((edge) => edge * (1 + 2 ** -52)), ...edges.map((edge) => edge * (1 - 2 ** -53))];
+        const all = [
+          ...values,
+          ...edges,
+          ...edges.map((edge) => edge * (1 + 2 ** -52)),
+          ...edges.map((edge) => edge * (1 - 2 ** -53)),
+        ];
         expect(placesOf(edges, all)).toEqual(all.map((x) => byDefinition(edges, x)));
       }),
       { numRuns: 300 },

@@ -19,7 +19,10 @@ const duplicatesOf = (records: [high: number, low: number, unit: number, place: 
 
 describe('duplicate identities', () => {
   it('are none among distinct keys, equal in one word or not', () => {
-    const records = Array.from({ length: 3000 }, (_, i) => [Math.imul(i, 0x9e3779b1) >>> 0, 7, 0, i] as [number, number, number, number]);
+    const records = Array.from(
+      { length: 3000 },
+      (_, i) => [Math.imul(i, 0x9e3779b1) >>> 0, 7, 0, i] as [number, number, number, number],
+    );
     expect(duplicatesOf(records, 2)).toEqual({ identities: 0, rows: 0, examples: [] });
   });
 
@@ -32,7 +35,14 @@ describe('duplicate identities', () => {
       [0xf0000000, 1, 0, 2],
       [5, 5, 2, 1],
     ];
-    const expected = { identities: 2, rows: 3, examples: [['0:2', '0:3'], ['0:90', '1:10', '2:1']] };
+    const expected = {
+      identities: 2,
+      rows: 3,
+      examples: [
+        ['0:2', '0:3'],
+        ['0:90', '1:10', '2:1'],
+      ],
+    };
     expect(duplicatesOf(records, 1)).toEqual(expected);
     rmSync(folder, { recursive: true });
     folder = mkdtempSync(join(tmpdir(), 'identities-'));

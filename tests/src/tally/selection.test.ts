@@ -15,15 +15,24 @@ const number = (...values: number[]): Column => ({ as: 'number', values: Float64
 const text = (labels: string[], ...codes: number[]): Column => ({ as: 'text', codes: Int32Array.from(codes), labels });
 const batch = (...columns: Column[]): Batch => {
   const first = columns[0]!;
-  const rows = first.as === 'number' ? first.values.length : first.as === 'text' ? first.codes.length : first.high.length;
-  return { rows, columns, places: Float64Array.from({ length: rows }, (_, i) => i + 2), rejects: [], bytes: 0, placesPassed: rows + 1 };
+  const rows =
+    first.as === 'number' ? first.values.length : first.as === 'text' ? first.codes.length : first.high.length;
+  return {
+    rows,
+    columns,
+    places: Float64Array.from({ length: rows }, (_, i) => i + 2),
+    rejects: [],
+    bytes: 0,
+    placesPassed: rows + 1,
+  };
 };
 const select = (input: StudyInput, ...columns: Column[]) => {
   const selection = new Selection(tallyPlan(parseStudy(input)), 3);
   const { events, rejects } = selection.select(batch(...columns), (place) => `a.csv:${place}`);
   return { selection, events, truth: [...events.truth.subarray(0, events.rows)], rejects };
 };
-const reasons = (rejects: { place: number; reason: string }[]) => rejects.map(({ place, reason }) => `${place} ${reason}`);
+const reasons = (rejects: { place: number; reason: string }[]) =>
+  rejects.map(({ place, reason }) => `${place} ${reason}`);
 
 describe('the selection of events', () => {
   it('takes a row without reconstructed value as lost where losses are recorded', () => {
@@ -55,7 +64,13 @@ describe('the selection of events', () => {
       { column: 'arm', is: 'in', value: ['left', 'top'] },
     ];
     const arm = text(['left', 'right', 'top'], 0, 1, 2, 0, -1);
-    const { truth, selection } = select(study({ cuts }), number(1, 2, 3, NaN, 5), number(1, 1, 1, 1, 1), number(2, 3, 2, 1, 3), arm);
+    const { truth, selection } = select(
+      study({ cuts }),
+      number(1, 2, 3, NaN, 5),
+      number(1, 1, 1, 1, 1),
+      number(2, 3, 2, 1, 3),
+      arm,
+    );
     expect(truth).toEqual([1, 3]);
     expect([...selection.cutPassed]).toEqual([4, 3]);
     expect(selection.ledger).toMatchObject({ read: 5, cut: 3, rejected: 0 });
@@ -85,20 +100,32 @@ describe('the selection of events', () => {
     const weights = number(0, -2, LARGEST_WEIGHT, LARGEST_WEIGHT * 1.01, LEAST_WEIGHT, LEAST_WEIGHT / 2, NaN, Infinity);
     const ones = number(...Array<number>(8).fill(1));
     const { rejects } = select(study({ roles: { true: 't', reconstructed: 'r', weight: 'w' } }), ones, ones, weights);
-    expect(reasons(rejects)).toEqual(['5 weight out of range', '7 weight out of range', '8 no weight', '9 weight out of range']);
+    expect(reasons(rejects)).toEqual([
+      '5 weight out of range',
+      '7 weight out of range',
+      '8 no weight',
+      '9 weight out of range',
+    ]);
   });
 
   it('rejects rows without run label, and refuses more runs than it can keep apart', () => {
     const byRun = study({ roles: { true: 't', reconstructed: 'r', run: 'run' } });
     const ones = number(1, 1, 1, 1);
     expect(reasons(select(byRun, ones, ones, text(['7'], 0, -1, 0, 0)).rejects)).toEqual(['3 no run label']);
-    expect(() => select(byRun, ones, ones, text(['a', 'b', 'c', 'd'], 0, 1, 2, 3))).toThrow(/^roles\.run: column "run" has more than 3 labels/);
+    expect(() => select(byRun, ones, ones, text(['a', 'b', 'c', 'd'], 0, 1, 2, 3))).toThrow(
+      /^roles\.run: column "run" has more than 3 labels/,
+    );
   });
 
   it('turns tags into indices and stops at a tag that is not listed, unless it is cut', () => {
-    const axes: StudyInput['axes'] = { true: { tags: ['electron', 'pion'] }, reconstructed: { from: 0, to: 1, bins: 2 } };
+    const axes: StudyInput['axes'] = {
+      true: { tags: ['electron', 'pion'] },
+      reconstructed: { from: 0, to: 1, bins: 2 },
+    };
     const tags = text(['pion', 'electron', 'muon'], 0, 1, 2);
-    expect(() => select(study({ axes }), tags, number(0, 0, 0))).toThrow(/^a\.csv:4: tag "muon" is not in axes\.true\.tags/);
+    expect(() => select(study({ axes }), tags, number(0, 0, 0))).toThrow(
+      /^a\.csv:4: tag "muon" is not in axes\.true\.tags/,
+    );
     const cut = select(study({ axes, cuts: [{ column: 't', is: '!=', value: 'muon' }] }), tags, number(0, 0, 0));
     expect(cut.truth).toEqual([1, 0]);
   });
