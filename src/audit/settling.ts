@@ -52,7 +52,7 @@ export const MOST_ENTRIES = 1e10;
 /**
  * Entries to add so that the limit of a share is settled, whichever way, with probability `ASSURANCE` under the posterior
  * itself: the share need not stay where its mean is now, and often will not. Hits among `n` more entries are Beta-binomial; their
- * distribution is taken as a Beta of the same mean and variance with continuity correction. `null` beyond `MOST_ENTRIES`.
+ * distribution is taken as a Beta of the same mean and variance with continuity correction (within 0.025, for few entries). `null` beyond `MOST_ENTRIES`.
  */
 export function entriesToSettle(marginal: Marginal, limit: number, credibility: number): number | null {
   const growth = leastGrowth(
