@@ -57,15 +57,26 @@ export class TallySums {
 
   /** Bins selected events. `runLabels` names the codes of `events.run`. */
   add(events: Events, runLabels: readonly string[]): void {
-    const { rows, truth, reco, run } = events;
+    const { rows, truth, reco } = events;
+    const kept = this.asPlanned(events);
     this.roomFor(rows);
     const { columns, outcomes } = this.places;
     this.trueBinner.places(truth, rows, columns);
     this.recoBinner.places(reco, rows, outcomes);
-    const matched = this.weighted || run || this.unmatched ? this.addAll(events, runLabels) : this.addPlain(events);
+    const matched =
+      this.weighted || kept.run || this.unmatched ? this.addAll(kept, runLabels) : this.addPlain(events);
     this.widenRange(truth, rows);
     this.ledger.tallied += matched;
     this.ledger.unmatched += rows - matched;
+  }
+
+  /** Events kept in memory may carry weights and runs that a plan of fewer roles does not ask for. */
+  private asPlanned(events: Events): Events {
+    return {
+      ...events,
+      weight: this.weighted ? events.weight : null,
+      run: this.plan.at.run < 0 ? null : events.run,
+    };
   }
 
   /** The way of most studies, kept apart because it is the inner loop of a large reading: counts of matched events. */

@@ -49,6 +49,19 @@ const event = fc.record({
 const events = fc.array(event, { maxLength: 60 });
 
 describe('a tally', () => {
+  it('leaves out weights and runs that the events have and the plan does not ask for', () => {
+    const list = [
+      { t: 0.5, r: 1, w: 7, run: 0 },
+      { t: 0.6, r: 1, w: -2, run: 2 },
+    ];
+    const plan = planOf({ roles: { true: 't', reconstructed: 'r' } });
+    const sums = new TallySums(plan);
+    sums.add(eventsOf(list), RUNS);
+    const tally = sums.finish(null);
+    expect(tally).toEqual(tallied(list, plan).finish(null));
+    expect([tally.cells.weights, tally.runs, tally.largestSquare]).toEqual([null, null, null]);
+  });
+
   it('splits a bin at its midpoint, the midpoint in the upper half, and keeps outer columns in their first half', () => {
     const plan = planOf({ roles: { true: 't', reconstructed: 'r' } });
     const at = (t: number): Event => ({ t, r: 1, w: 1, run: 0 });
