@@ -1,5 +1,6 @@
 import { Command, CommanderError, InvalidArgumentError, Option } from 'commander';
 import { availableParallelism } from 'node:os';
+import { parseReplicaRange } from '../src/handover/handover-options';
 import { Cancelled, InputError } from '../src/study/input-error';
 import type { Surroundings } from './surroundings';
 import { VERSION } from './version';
@@ -108,6 +109,42 @@ function program(): Command {
     .action(async (bundle: string, options) => {
       const { verify } = await import('./commands/verify');
       if (!(await verify(bundle, options, surroundings))) process.exitCode = DOES_NOT_HOLD;
+    });
+  entasis
+    .command('convert')
+    .description('a bundle as one file of another format')
+    .argument('<bundle>', 'folder of a bundle')
+    .requiredOption('--to <format>', 'npz, hdf5, parquet, arrow, csv, json or fits')
+    .requiredOption('--out <file>', 'the file to write')
+    .addOption(
+      new Option('--replicas <A..B>', 'only replicas A to B, both included, counted from 0').argParser((text: string) =>
+        parseReplicaRange(text),
+      ),
+    )
+    .addOption(jsonOption())
+    .action(async (bundle: string, options) => {
+      const { convert } = await import('./commands/convert');
+      await convert(bundle, options, surroundings);
+    });
+
+  entasis
+    .command('open')
+    .description('the desktop window')
+    .argument('[study]', 'study document')
+    .action(async (study: string | undefined) => {
+      const { open } = await import('./commands/window');
+      await open(study, surroundings);
+    });
+
+  entasis
+    .command('serve')
+    .description('the same window over 127.0.0.1, for a browser on this machine or through an SSH tunnel')
+    .argument('[study]', 'study document')
+    .addOption(new Option('--port <n>', 'port; by default a free one').argParser(wholeNumber(0)))
+    .addOption(jsonOption())
+    .action(async (study: string | undefined, options) => {
+      const { serve } = await import('./commands/window');
+      await serve(study, options, surroundings);
     });
   return entasis;
 }
