@@ -35,7 +35,7 @@ const NEAR = 0.1;
 export function deviance(x: number, m: number, excess = x - m): number {
   if (x === 0) return m;
   const v = excess / (x + m);
-  return Math.abs(v) < NEAR ? nearDeviance(x, excess, v) : x * Math.log(x / m) - excess;
+  return Math.abs(v) < NEAR ? nearDeviance(x, excess, v) : x * (Math.log(x) - Math.log(m)) - excess;
 }
 
 /** `ln(x / m) = 2 artanh v` with `v = (x - m) / (x + m)`, as a series. */
