@@ -68,6 +68,8 @@ export class Selection {
     ledger.cut += cut;
     ledger.rejected += rejects.length;
     for (const { reason } of rejects) ledger.reasons[reason] = (ledger.reasons[reason] ?? 0) + 1;
+    // What the reader found stands before what was found here: both together go by place.
+    rejects.sort((a, b) => a.place - b.place);
     return { events, rejects };
   }
 

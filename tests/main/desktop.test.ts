@@ -6,9 +6,16 @@ import { deserialize, serialize } from 'node:v8';
 import { afterAll, beforeAll, describe, expect, it, vi } from 'vitest';
 import type { Answer, Bridge, Notice, StartFacts } from '../../main/bridge';
 
-/** What crosses between the processes of Electron is cloned; shared memory, functions and class instances do not pass. */
+/** What crosses between the processes of Electron is cloned; shared memory and functions do not pass. */
 function cloned<T>(value: T): T {
+  refuseShared(value);
   return deserialize(serialize(value)) as T;
+}
+
+function refuseShared(value: unknown): void {
+  if (ArrayBuffer.isView(value)) {
+    if (value.buffer instanceof SharedArrayBuffer) throw new Error('An object could not be cloned.');
+  } else if (typeof value === 'object' && value !== null) Object.values(value).forEach(refuseShared);
 }
 
 const electron = vi.hoisted(() => {
