@@ -10,8 +10,29 @@ export interface ByteSource {
   close(): void;
 }
 
+/** A source that never waits. */
+export interface SyncBytes extends ByteSource {
+  fill(into: Uint8Array): number;
+}
+
+/** Bytes in memory. */
+export class MemoryBytes implements SyncBytes {
+  consumed = 0;
+
+  constructor(private readonly bytes: Uint8Array) {}
+
+  fill(into: Uint8Array): number {
+    const got = Math.min(into.length, this.bytes.length - this.consumed);
+    into.set(this.bytes.subarray(this.consumed, this.consumed + got));
+    this.consumed += got;
+    return got;
+  }
+
+  close(): void {}
+}
+
 /** The bytes `[start, end)` of a file as they stand, read at once: no turn of the event loop a block. */
-export class PlainBytes implements ByteSource {
+export class PlainBytes implements SyncBytes {
   private readonly file: number;
   private position: number;
 

@@ -1,3 +1,4 @@
+import { arrow } from './arrow';
 import type { Reader } from './batch';
 import { firstBytes } from './byte-source';
 import { csv } from './csv';
@@ -7,12 +8,16 @@ import { compressionOf, openBytes } from './open-bytes';
 import { parquet } from './parquet';
 
 /** All formats of event files that can be read. */
-export const READERS: readonly Reader[] = [csv, ndjson, parquet, hdf5];
+export const READERS: readonly Reader[] = [csv, ndjson, parquet, hdf5, arrow];
 
 /** First bytes by which a binary format is known, as Latin-1. */
 const MAGIC: [string, Reader][] = [
   ['PAR1', parquet],
   ['\x89HDF\r\n\x1a\n', hdf5],
+  ['ARROW1', arrow],
+  ['FEA1', arrow],
+  // The continuation mark of a stream.
+  ['\xff\xff\xff\xff', arrow],
 ];
 const LONGEST_MAGIC = 16;
 
@@ -21,6 +26,7 @@ const ENDINGS: [RegExp, Reader][] = [
   [/\.(ndjson|jsonl|json)(\.gz|\.zst|\.zstd)?$/i, ndjson],
   [/\.(h5|hdf5|hdf|he5)$/i, hdf5],
   [/\.(parquet|pq)$/i, parquet],
+  [/\.(arrow|arrows|feather|ipc)$/i, arrow],
   [/\.(csv|tsv)(\.gz|\.zst|\.zstd)?$/i, csv],
 ];
 

@@ -13,5 +13,5 @@ export function compressionOf(path: string, name: string): Compression {
 /** The bytes of a text file, decompressed; a file that is not compressed may be read in part, from `start` to `end`. */
 export function openBytes(path: string, name: string, how: Compression, start = 0, end = Infinity): ByteSource {
   if (how === 'gzip') return new GzipBytes(path, name);
-  return how === 'zstd' ? new ZstdBytes(path, name) : new PlainBytes(path, name, start, end);
+  return how === 'zstd' ? new ZstdBytes(new PlainBytes(path, name), name) : new PlainBytes(path, name, start, end);
 }

@@ -1,6 +1,6 @@
 import { Decompress } from 'fzstd';
 import { InputError } from '../study/input-error';
-import { firstBytes, PlainBytes, type ByteSource } from './byte-source';
+import { firstBytes, MemoryBytes, type ByteSource, type SyncBytes } from './byte-source';
 import { XxHash64 } from './xxhash64';
 
 const FRAME_MAGIC = 0xfd2fb528;
@@ -22,20 +22,18 @@ interface Frame {
 }
 
 /**
- * A zstd file (RFC 8878), of any number of frames. The blocks are decoded by fzstd; the frames are walked here, because
+ * Zstd data (RFC 8878), of any number of frames. The blocks are decoded by fzstd; the frames are walked here, because
  * fzstd looks neither at checksums nor at content sizes nor at how much memory a window asks for, and tells no place.
  */
 export class ZstdBytes implements ByteSource {
-  private readonly input: PlainBytes;
   private readonly ready: Uint8Array[] = [];
   private frame: Frame | null = null;
 
+  /** `input` are the compressed bytes, `name` names the file in errors. */
   constructor(
-    path: string,
+    private readonly input: SyncBytes,
     private readonly name: string,
-  ) {
-    this.input = new PlainBytes(path, name);
-  }
+  ) {}
 
   get consumed(): number {
     return this.input.consumed;
@@ -165,6 +163,21 @@ export class ZstdBytes implements ByteSource {
 
   private damage(place: number, why: string, cause?: unknown): InputError {
     return new InputError(this.name, `damaged zstd data at byte ${place} (${why})`, REMEDY, { cause });
+  }
+}
+
+/** The bytes of whole frames held in memory. Throws `InputError` at a damage, and beyond `most` bytes. */
+export function unzstd(bytes: Uint8Array, name: string, most: number): Uint8Array {
+  const source = new ZstdBytes(new MemoryBytes(bytes), name);
+  const parts: Uint8Array[] = [];
+  let length = 0;
+  for (;;) {
+    const part = new Uint8Array(LARGEST_BLOCK);
+    const got = source.fill(part);
+    if (got === 0) return Buffer.concat(parts, length);
+    length += got;
+    if (length > most) throw new InputError(name, `zstd data that grow beyond ${most} bytes`, 'write smaller pieces');
+    parts.push(part.subarray(0, got));
   }
 }
 
