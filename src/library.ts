@@ -49,6 +49,7 @@ export { referenceOf, type ReferenceSpectrum } from './audit/reference';
 // 4. Replicas
 export { BLOCK, type SamplerParameters } from './ensemble/draw';
 export { drawReplicas, type DrawnReplicas } from './ensemble/replicas';
+export { breaksOf, sequentialBetas, sharesOf, type SequentialBetas } from './ensemble/sequential';
 
 // 5. Bundles and hand-over
 export { openBundle, readArray, replicaBlocks, type Bundle, type ReplicaBlock } from './handover/open-bundle';

@@ -1,6 +1,7 @@
 import { createWriteStream } from 'node:fs';
 import { Readable } from 'node:stream';
 import { pipeline } from 'node:stream/promises';
+import { sequentialBetas } from '../ensemble/sequential';
 import { matchedDirichlet } from '../posterior/matched-dirichlet';
 import { columnOf, type Posterior } from '../posterior/posterior';
 import type { HandoverOptions } from './handover-options';
@@ -54,13 +55,6 @@ function parametersOf(posterior: Pick<Posterior, 'outcomes' | 'shape' | 'scale'>
 }
 
 function dirichlet(shape: Float64Array): object {
-  return { shape: [...shape], sequential: sequentialForm(shape) };
-}
-
-/** `a_k` and the sum of the shapes behind it, for every outcome but the last. */
-function sequentialForm(shape: Float64Array): { a: number[]; b: number[] } {
-  const b = new Array<number>(shape.length - 1);
-  let behind = 0;
-  for (let k = shape.length - 1; k > 0; k--) b[k - 1] = behind += shape[k]!;
-  return { a: [...shape.subarray(0, -1)], b };
+  const { a, b } = sequentialBetas(shape);
+  return { shape: [...shape], sequential: { a: [...a], b: [...b] } };
 }

@@ -63,7 +63,8 @@ async function copyTable(
   const keys = Object.keys(metadata).map((key, k) => `${key}: $${k + 1}`);
   await connection.run(`set variable metadata = {${keys.join(', ')}}`, Object.values(metadata));
   try {
-    const as = `format parquet, compression zstd, kv_metadata getvariable('metadata')`;
+    // Without a temporary file of DuckDB's own: the path is one already, and what is cancelled must leave nothing.
+    const as = `format parquet, compression zstd, use_tmp_file false, kv_metadata getvariable('metadata')`;
     await connection.run(`copy (select ${columns.join(', ')} from ${name}()) to $1 (${as})`, [path]);
   } catch (error) {
     throw fault.error ?? error;
