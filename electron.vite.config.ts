@@ -5,8 +5,25 @@ import { defineConfig } from 'electron-vite';
 const at = (path: string): string => resolve(import.meta.dirname, path);
 const worker = (name: string): string => at(`main/workers/${name}-worker.ts`);
 
+const STDLIB = [
+  'stats-base-dists-beta-cdf',
+  'math-base-special-betaincinv',
+  'math-base-special-erfc',
+  'math-base-special-erfcinv',
+  'math-base-special-gammaln',
+].map((name) => `@stdlib/${name}`);
 /** Packages built into the program, with what they import. */
-const BUNDLED = ['zod', 'commander', 'tinyglobby', 'fdir', 'picomatch', 'arquero', '@uwdata/flechette', 'acorn'];
+const BUNDLED = [
+  'zod',
+  'commander',
+  'tinyglobby',
+  'fdir',
+  'picomatch',
+  'arquero',
+  '@uwdata/flechette',
+  'acorn',
+  ...STDLIB,
+];
 
 export default defineConfig({
   main: {
