@@ -103,7 +103,8 @@ function program(): Command {
   entasis
     .command('verify')
     .description('hashes, invariants, and replicas drawn again from seed and tally')
-    .argument('<bundle>', 'folder of a bundle')
+    .argument('<bundle>', 'folder of a bundle, or a file that `entasis convert` wrote')
+    .option('--against <bundle>', 'compare such a file with the bundle it was made of, number by number')
     .addOption(workersOption())
     .addOption(jsonOption())
     .action(async (bundle: string, options) => {
