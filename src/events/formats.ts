@@ -4,11 +4,13 @@ import { firstBytes } from './byte-source';
 import { csv } from './csv';
 import { hdf5 } from './hdf5';
 import { ndjson } from './ndjson';
+import { npy } from './npy';
+import { npz } from './npz';
 import { compressionOf, openBytes } from './open-bytes';
 import { parquet } from './parquet';
 
 /** All formats of event files that can be read. */
-export const READERS: readonly Reader[] = [csv, ndjson, parquet, hdf5, arrow];
+export const READERS: readonly Reader[] = [csv, ndjson, parquet, hdf5, arrow, npy, npz];
 
 /** First bytes by which a binary format is known, as Latin-1. */
 const MAGIC: [string, Reader][] = [
@@ -16,6 +18,10 @@ const MAGIC: [string, Reader][] = [
   ['\x89HDF\r\n\x1a\n', hdf5],
   ['ARROW1', arrow],
   ['FEA1', arrow],
+  ['\x93NUMPY', npy],
+  // The two ways a zip archive begins: with an entry, or with its end where it has none.
+  ['PK\x03\x04', npz],
+  ['PK\x05\x06', npz],
   // The continuation mark of a stream.
   ['\xff\xff\xff\xff', arrow],
 ];
@@ -26,6 +32,8 @@ const ENDINGS: [RegExp, Reader][] = [
   [/\.(ndjson|jsonl|json)(\.gz|\.zst|\.zstd)?$/i, ndjson],
   [/\.(h5|hdf5|hdf|he5)$/i, hdf5],
   [/\.(parquet|pq)$/i, parquet],
+  [/\.npy$/i, npy],
+  [/\.npz$/i, npz],
   [/\.(arrow|arrows|feather|ipc)$/i, arrow],
   [/\.(csv|tsv)(\.gz|\.zst|\.zstd)?$/i, csv],
 ];

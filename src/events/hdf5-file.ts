@@ -3,25 +3,22 @@ import { resolve } from 'node:path';
 import type { File as HdfFile, Metadata } from 'h5wasm/node';
 import { InputError } from '../study/input-error';
 import { openFile, sizeOf } from './byte-source';
+import type { NamedColumn } from './named-columns';
 import { isReadable, type PackedField } from './packed-field';
 
 type Hdf5 = typeof import('h5wasm/node');
 type Module = Awaited<Hdf5['ready']>;
 
 /** A column of an HDF5 file: a data set of one dimension, or a member of a compound one. */
-export interface Hdf5Column {
-  /** The path of the data set without a leading slash; for a member, a colon and its name behind. */
-  name: string;
+export interface Hdf5Column extends NamedColumn {
+  /** The path of the data set, without a leading slash. */
   path: string;
-  rows: number;
   /** Bytes of one row of the data set, all members together. */
   rowBytes: number;
   /** Rows of a chunk, 1 where the data set is contiguous. */
   chunkRows: number;
   /** Where the value stands in the row; `text` for variable-length text. */
   field: PackedField | 'text' | null;
-  /** Why the column cannot be read, where `field` is `null`. */
-  fault: string;
 }
 
 /** Most objects of a file that are looked at: links may go in circles. */

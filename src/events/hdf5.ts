@@ -2,6 +2,7 @@ import { InputError } from '../study/input-error';
 import type { Batch, Need, Reader, Unit } from './batch';
 import { sizeOf } from './byte-source';
 import { Hdf5File, type Hdf5Column } from './hdf5-file';
+import { findColumns, longest, shortName } from './named-columns';
 import { typeOf, unpack } from './packed-field';
 import type { Slab } from './slab';
 import { batchesOf, rowRanges, type Stretch } from './slab-batches';
@@ -36,19 +37,15 @@ export const hdf5: Reader = {
   format: 'hdf5',
   places: 'row',
 
-  /** The columns of the greatest length: those of other lengths cannot stand beside them. */
   async columns(path) {
     const all = await withFile(path, path, (file) => file.columns());
-    const readable = all.filter(({ field }) => field !== null);
-    const rows = Math.max(...readable.map((column) => column.rows));
-    const longest = readable.filter((column) => column.rows === rows);
-    return longest.map((column) => ({ name: shortName(column, all), type: kindOf(column) }));
+    return longest(all).map((column) => ({ name: shortName(column, all), type: kindOf(column) }));
   },
 
   async plan(path, name, needs, pieces) {
     const all = await withFile(path, name, (file) => file.columns());
-    const columns = needs.map(({ column }) => find(column, all, name));
-    const rows = commonRows(columns, needs, name);
+    const columns = findColumns(needs, all, name);
+    const rows = columns[0]?.rows ?? 0;
     const bytes = sizeOf(path, name);
     for (const column of columns) checkSize(column, bytes, name);
     const step = Math.max(...columns.map(stepOf), 1);
@@ -99,40 +96,6 @@ function textSlab(texts: string[]): Slab {
 
 function kindOf({ field }: Hdf5Column): 'number' | 'text' {
   return field === 'text' || field === null ? 'text' : typeOf(field);
-}
-
-function lastPart({ name }: Hdf5Column): string {
-  return name.slice(Math.max(name.lastIndexOf('/'), name.lastIndexOf(':')) + 1);
-}
-
-function shortName(column: Hdf5Column, all: readonly Hdf5Column[]): string {
-  const last = lastPart(column);
-  return all.filter((each) => lastPart(each) === last).length === 1 ? last : column.name;
-}
-
-function find(asked: string, all: readonly Hdf5Column[], file: string): Hdf5Column {
-  const wanted = asked.replace(/^\//, '');
-  const exact = all.filter(({ name }) => name === wanted);
-  const found = exact.length > 0 ? exact : all.filter((column) => lastPart(column) === wanted);
-  if (found.length === 0) {
-    const names = all.filter(({ field }) => field !== null).map(({ name }) => name);
-    throw new InputError(file, `no column "${asked}"`, `the columns are ${names.join(', ') || 'none'}`);
-  }
-  if (found.length > 1) {
-    const names = found.map(({ name }) => name).join(', ');
-    throw new InputError(file, `several columns end in "${asked}"`, `name one of ${names}`);
-  }
-  const [{ field, fault }] = found;
-  if (field === null)
-    throw new InputError(file, `column "${asked}" holds ${fault}`, 'choose one of single numbers or texts');
-  return found[0];
-}
-
-function commonRows(columns: Hdf5Column[], needs: readonly Need[], file: string): number {
-  const odd = columns.findIndex(({ rows }) => rows !== columns[0].rows);
-  if (odd < 0) return columns[0]?.rows ?? 0;
-  const told = (i: number) => `"${needs[i].column}" has ${columns[i].rows} rows`;
-  throw new InputError(file, `column ${told(0)}, ${told(odd)}`, 'choose columns of the same table');
 }
 
 function checkSize({ name, rows, rowBytes, chunkRows }: Hdf5Column, bytes: number, file: string): void {

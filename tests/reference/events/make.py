@@ -85,6 +85,27 @@ def make_outward_links():
         file["t"] = np.arange(8.0)
 
 
+def make_numpy():
+    data = columns()
+    data["half"] = (np.arange(ROWS) / 2).astype("f2")
+    data["name"] = np.array([f"\u00e9 {k % 5}" for k in range(ROWS)], dtype=">U6")
+    fields = [(name, values.dtype) for name, values in data.items()]
+    record = np.zeros(ROWS, dtype=np.dtype(fields + [("pair", "f8", 2), ("z", "c16")], align=True))
+    for name, values in data.items():
+        record[name] = values
+    np.save(HERE / "table.npy", record)
+    with open(HERE / "version3.npy", "wb") as file:
+        named = np.array([(1.5, 2)], dtype=[("\u03b5", "f8"), ("r", "i4")])
+        np.lib.format.write_array(file, named, version=(3, 0))
+    with open(HERE / "version2.npy", "wb") as file:
+        np.lib.format.write_array(file, record[["e_tag", "run"]][:20].copy(), version=(2, 0))
+    np.savez_compressed(HERE / "columns.npz", **data, matrix=np.zeros((3, 2)), short_one=np.arange(5.0))
+    np.savez(HERE / "stored.npz", t=data["e_tag"][:20], events=record[["e_tag", "run"]][:20].copy())
+    np.save(HERE / "plain.npy", data["e_tag"][:5])
+    np.save(HERE / "objects.npy", np.array([{}, 1], dtype=object), allow_pickle=True)
+
+
 os.chdir(HERE)
+make_numpy()
 make_zstd()
 make_hdf5()
