@@ -2,6 +2,7 @@ import { Command, CommanderError, InvalidArgumentError, Option } from 'commander
 import { availableParallelism } from 'node:os';
 import { parseReplicaRange } from '../src/handover/handover-options';
 import { Cancelled, InputError } from '../src/study/input-error';
+import { endStartedEarly, startEarly } from './pool';
 import type { Surroundings } from './surroundings';
 import { VERSION } from './version';
 
@@ -72,6 +73,7 @@ function program(): Command {
     .addOption(workersOption())
     .addOption(jsonOption())
     .action(async (study: string, options) => {
+      startEarly(options.from ? DRAW_WORKER : READ_WORKER, options.workers);
       const { build } = await import('./commands/build');
       await build(study, options, surroundings);
     });
@@ -85,6 +87,7 @@ function program(): Command {
     .addOption(workersOption())
     .addOption(jsonOption())
     .action(async (study: string, options) => {
+      startEarly(READ_WORKER, options.workers);
       const { tally } = await import('./commands/tally');
       await tally(study, options, surroundings);
     });
@@ -202,4 +205,6 @@ try {
   await quietly(program()).parseAsync();
 } catch (error) {
   process.exitCode = fail(error);
+} finally {
+  endStartedEarly();
 }

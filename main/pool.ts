@@ -16,6 +16,31 @@ interface Waiting {
   onNote: ((note: unknown) => void) | undefined;
 }
 
+const started = new Map<string, Worker[]>();
+
+/**
+ * Starts workers before it is known what they will be told: they load while the program does. The next pool of the same
+ * entry takes them; those it does not want it ends.
+ */
+export function startEarly(entry: URL, count: number): void {
+  started.set(
+    entry.href,
+    Array.from({ length: count }, () => new Worker(entry)),
+  );
+}
+
+function startedEarly(entry: URL, size: number): Worker[] {
+  const ready = started.get(entry.href) ?? [];
+  started.delete(entry.href);
+  for (const worker of ready.slice(size)) void worker.terminate();
+  return ready.slice(0, size);
+}
+
+/** Ends what was started early and never taken: a command that failed before it came to its work. */
+export function endStartedEarly(): void {
+  for (const entry of started.keys()) startedEarly(new URL(entry), 0);
+}
+
 /** Workers of one kind, each with its own state, called by index. */
 export class Pool<C extends Calls> {
   private readonly workers: Worker[];
@@ -29,7 +54,8 @@ export class Pool<C extends Calls> {
     readonly size: number,
   ) {
     this.waiting = Array.from({ length: size }, () => new Map());
-    this.workers = Array.from({ length: size }, (_, w) => this.start(entry, w));
+    const ready = startedEarly(entry, size);
+    this.workers = Array.from({ length: size }, (_, w) => this.listen(ready[w] ?? new Worker(entry), w));
   }
 
   /** Calls `name` on worker `w`. Rejects with the worker's `InputError`, `Cancelled` after `stop`, or a fault. */
@@ -82,8 +108,7 @@ export class Pool<C extends Calls> {
     await Promise.all(this.workers.map((worker) => worker.terminate()));
   }
 
-  private start(entry: URL, w: number): Worker {
-    const worker = new Worker(entry);
+  private listen(worker: Worker, w: number): Worker {
     worker.on('message', (answer: Answer) => this.receive(w, answer));
     worker.on('error', (error: Error) => this.fail(w, error));
     worker.on('exit', () => this.fail(w, new Error('a worker ended before its work was done')));

@@ -4,7 +4,7 @@ import { decode } from './dictionary';
 import { Fields, trimmedEnd } from './fields';
 import { identify } from './identity';
 import { LONGEST_LINE } from './lines';
-import { isMissing, parseNumber, readDecimal } from './number';
+import { isMissing, parseNumber, readDecimal, readShort } from './number';
 
 /** Where the columns of a delimited table stand: plain data, found once when the file is planned. */
 export interface Layout {
@@ -90,13 +90,15 @@ export class RowParser {
         } else if (kinds[field] === NUMBER) {
           while (bytes[p] === SPACE) p++;
           const begin = p;
-          p = readDecimal(bytes, p, to, numbers[needsOf[field][0]], rows);
+          const into = numbers[needsOf[field][0]];
+          p = readShort(bytes, begin, into, rows);
+          if (p === begin) p = readDecimal(bytes, begin, to, into, rows);
           if (p === begin || stops[bytes[p]] === 0) {
             while (stops[bytes[p]] === 0) p++;
             const end = trimmedEnd(bytes, begin, p);
             const value = parseNumber(bytes, begin, end);
             if (value !== value && !isMissing(bytes, begin, end)) break lines;
-            numbers[needsOf[field][0]][rows] = value;
+            into[rows] = value;
           }
         } else {
           while (bytes[p] === SPACE) p++;

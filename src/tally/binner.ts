@@ -32,26 +32,33 @@ function edgeBinner(edges: Float64Array): Binner {
   const perUnit = cells / (highest - lowest);
   const { starts, ends } = searchGrid(edges, perUnit, cells);
 
+  const crowded = starts.some((start, c) => ends[c]! - start > FEW);
+
   function places(values: Float64Array, rows: number, into: Int32Array): void {
     for (let i = 0; i < rows; i++) {
       const x = values[i]!;
       if (x >= lowest && x < highest) {
         const cell = ((x - lowest) * perUnit) | 0;
-        let lo = starts[cell]!;
-        let hi = ends[cell]!;
-        while (hi - lo > FEW) {
-          const middle = (lo + hi) >> 1;
-          if (x >= edges[middle]!) lo = middle;
-          else hi = middle;
-        }
-        while (x >= edges[lo + 1]!) lo++;
-        into[i] = lo + 1;
+        let bin = starts[cell]!;
+        if (crowded) bin = halve(edges, x, bin, ends[cell]!);
+        while (x >= edges[bin + 1]!) bin++;
+        into[i] = bin + 1;
       } else {
         into[i] = x < lowest ? 0 : x >= highest ? bins + 1 : -1;
       }
     }
   }
   return { places };
+}
+
+/** Halves `[lo, hi)`, which holds the bin of `x`, until few edges are left; returns its lower end. */
+function halve(edges: Float64Array, x: number, lo: number, hi: number): number {
+  while (hi - lo > FEW) {
+    const middle = (lo + hi) >> 1;
+    if (x >= edges[middle]!) lo = middle;
+    else hi = middle;
+  }
+  return lo;
 }
 
 /**

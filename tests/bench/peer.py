@@ -15,12 +15,8 @@ def tally(events, edges_path, out):
     import pandas as pd
 
     edges = json.load(open(edges_path))
-    if events.endswith(".parquet"):
-        import duckdb  # only where it is installed
-
-        frame = duckdb.sql(f"select t, r from '{events}'").df()
-    else:
-        frame = pd.read_csv(events, usecols=["t", "r"])
+    frame = pd.read_csv(events)
+    frame = frame[frame["quality"] >= 1]
     t, r = frame["t"].to_numpy(), frame["r"].to_numpy()
     lost = np.isnan(r)
     te = np.concatenate([[-np.inf], edges["true"], [np.inf]])

@@ -23,12 +23,13 @@ const folder = mkdtempSync(join(tmpdir(), 'entasis-bench-'));
 const at = (name) => join(folder, name);
 process.on('exit', () => rmSync(folder, { recursive: true, force: true }));
 
-function writeStudy(name, files, replicas) {
+function writeStudy(name, files, replicas, cuts = []) {
   const axis = { label: 'Energy', unit: 'MeV', edges: EDGES };
   const study = {
     schema: 'entasis.study/1',
     events: { files },
     roles: { true: 't', reconstructed: 'r' },
+    cuts,
     axes: { true: axis, reconstructed: axis },
     ensemble: { replicas, seed: 1 },
   };
@@ -66,7 +67,7 @@ async function duckdb(sql) {
 async function csvTally(peer) {
   await writeEvents(at('events.csv'), ROWS);
   writeFileSync(at('edges.json'), JSON.stringify({ true: EDGES, reconstructed: EDGES }));
-  const study = writeStudy('events.study.json', ['events.csv'], 1942);
+  const study = writeStudy('events.study.json', ['events.csv'], 1942, [{ column: 'quality', is: '>=', value: 1 }]);
   const ours = entasis('tally', study, '--out', at('events.part'));
   const theirs = peer
     ? python('tally', at('events.csv'), at('edges.json'), at('counts.npy'))
