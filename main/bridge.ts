@@ -474,33 +474,47 @@ export interface PriorSensitivityView {
     flags: { flagged: number; undecided: number };
     /** `[columns]` largest change of a mean in units of the study's own sd of that cell. */
     change: Float64Array;
+    /** Flags whose answer differs from the study's own. */
+    changed: { id: Flag['id']; column: string | null; bin: string | null; from: Flag['state']; to: Flag['state'] }[];
   }[];
-  largest: { prior: string; column: number; outcome: number; inSd: number };
+  /** `null` where no prior changes any mean. */
+  largest: { prior: string; column: number; outcome: number; inSd: number } | null;
   seconds: number;
 }
 
+/**
+ * How well intervals would cover if the matrix were used: over many invented campaigns of the reference spectrum.
+ * (Changed when the engine landed: coverage and widths over all campaigns, not the spectrum of one of them.)
+ */
 export interface RehearsalView {
+  /** Columns that have reference content; arrays are over these. */
   columnNames: string[];
-  truth: Float64Array;
+  reference: Float64Array;
+  repetitions: number;
   /** How the true spectrum was inferred: with the matrix at its mean, and free under its posterior. */
   fixed: RehearsalSide;
   free: RehearsalSide;
-  /** `[columns]` how much the untagged data narrowed each column: sd after over sd before. */
+  /** Sd of each column's probabilities after the untagged data over before. */
   narrowing: Float64Array;
+  /** Largest split-chain R-hat and fewest effective draws of all inferences; share that ended before they had mixed. */
+  rHat: number;
+  effectiveDraws: number;
+  unmixed: number;
+  /** Weighted columns stood for themselves by their matched Dirichlet. */
   matched: boolean;
   note: string;
   seconds: number;
 }
 export interface RehearsalSide {
-  mean: Float64Array;
-  lower68: Float64Array;
-  upper68: Float64Array;
-  lower95: Float64Array;
-  upper95: Float64Array;
-  coverage68: number;
-  coverage95: number;
-  rHat: Float64Array;
-  effectiveDraws: Float64Array;
+  /** Share of campaigns whose interval held the truth, with its Clopper-Pearson interval at 95 %. */
+  coverage68: Estimates;
+  coverage95: Estimates;
+  /** Mean full width of the intervals over the reference content. */
+  width68: Float64Array;
+  width95: Float64Array;
+  /** Over all columns: mean coverage with its standard error over the campaigns. */
+  overall68: { value: number; error: number };
+  overall95: { value: number; error: number };
 }
 
 export interface ComparisonView {
@@ -564,10 +578,11 @@ const suggestion = z.union([
 ]);
 
 const target = z.union([
-  /** Matrix variance below this share of the data variance in every bin. */
+  /** Matrix variance at most this many times the data variance in every bin. */
   z.strictObject({ matrixShare: z.number().positive().max(1000) }),
   /** Every undecided flag expected to be settled. */
   z.strictObject({ settleFlags: z.literal(true) }),
+  /** Relative standard deviation of the efficiency of every column. */
   z.strictObject({ efficiencySd: z.number().positive().lt(1) }),
   /** What N more events would bring, spread as measured or where they pay most. */
   z.strictObject({ events: z.number().positive().max(1e15), spread: z.enum(['as measured', 'optimal']) }),
@@ -680,6 +695,7 @@ export const BRIDGE = {
     z.strictObject({
       bundle: path,
       to: z.enum(['npz', 'hdf5', 'parquet', 'arrow', 'csv', 'json', 'fits']),
+      /** `[from, to)`; `null`: all of them, or none where the format holds none. */
       replicas: z.tuple([count, count]).nullable(),
       path,
       replace: z.boolean(),

@@ -18,6 +18,7 @@ const PHASES: Record<Progress['stage'], string> = {
   drawing: 'Drawing replicas',
   checking: 'Checking',
   writing: 'Writing',
+  rehearsing: 'Rehearsing',
 };
 
 /** The jobs of one window: each has a name given by the page, progress, and can be cancelled. */

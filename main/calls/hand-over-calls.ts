@@ -1,15 +1,17 @@
-import type { BundleWritten, Checked, Verification } from '../bridge';
+import type { BundleWritten, Checked, Verification, WrittenFiles } from '../bridge';
 import { buildBundle } from '../build';
+import { convertBundle } from '../convert';
 import type { Job } from '../jobs';
 import { verifyBundle } from '../verify';
 import { studyFiles } from './event-calls';
 import type { Desk, Handlers } from './handlers';
 
-/** Writing the bundle and checking it. */
-export function handOverCalls(desk: Desk): Handlers<'build' | 'verify'> {
+/** Writing the bundle, checking it, and handing it over in other formats. */
+export function handOverCalls(desk: Desk): Handlers<'build' | 'verify' | 'convert'> {
   return {
     build: (argument) => desk.jobs.run(argument.job, (job) => build(desk, argument, job)),
     verify: ({ bundle, job }) => desk.jobs.run(job, (running) => verify(desk, bundle, running)),
+    convert: (argument) => desk.jobs.run(argument.job, (job) => convert(desk, argument, job)),
   };
 }
 
@@ -23,7 +25,14 @@ async function build(desk: Desk, argument: Checked<'build'>, job: Job): Promise<
   const { reading, tally } = await desk.events.source(files, { signal, onProgress });
   const source = { tally, inputs: reading.inputs, rejectedRows: reading.rejectedRows };
   const settings = { version, workers, drawWorker: workerFiles.draw, signal, onProgress };
-  const { manifest } = await buildBundle({ study: files.study, where: 'study', folder: files.folder, source, out, ...settings });
+  const { manifest } = await buildBundle({
+    study: files.study,
+    where: 'study',
+    folder: files.folder,
+    source,
+    out,
+    ...settings,
+  });
   desk.chosen.bundle(out, true);
   const written = Object.entries(manifest.files).map(([name, file]) => ({ name, ...file }));
   return {
@@ -44,4 +53,16 @@ async function verify(desk: Desk, bundle: string, { signal, progress }: Job): Pr
   const { workers, workerFiles } = desk;
   const found = await verifyBundle(path, { drawWorker: workerFiles.draw, workers, signal, onProgress: progress });
   return { ...found, seconds: (desk.now() - began) / 1000 };
+}
+
+async function convert(desk: Desk, argument: Checked<'convert'>, job: Job): Promise<WrittenFiles> {
+  const began = desk.now();
+  const bundle = desk.chosen.mayReadBundle(argument.bundle);
+  const out = desk.chosen.mayWrite(argument.path, 'converted', argument.replace);
+  const [from, to] = argument.replicas ?? [];
+  const replicas = from === undefined || to === undefined ? undefined : { from, to };
+  const { signal, progress: onProgress } = job;
+  const { replace } = argument;
+  const files = await convertBundle({ bundle, to: argument.to, out, replicas, replace, signal, onProgress });
+  return { files, seconds: (desk.now() - began) / 1000 };
 }

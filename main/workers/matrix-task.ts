@@ -10,13 +10,29 @@ import { summarise, type Summary } from '../../src/posterior/summary';
 import { canonicalJson } from '../../src/study/fingerprint';
 import { resolveAxis, type Study } from '../../src/study/study';
 import type { Tally } from '../../src/tally/tally';
-import type { AuditView, CellView, ColumnView, InfluenceView, PosteriorView, Replicas } from '../bridge';
+import type {
+  AuditView,
+  CellView,
+  Checked,
+  ColumnView,
+  InfluenceView,
+  PlanView,
+  PosteriorView,
+  PriorSensitivityView,
+  RehearsalView,
+  Replicas,
+  ReplicasNeeded,
+} from '../bridge';
+import { replicasNeeded } from '../replicas-needed';
 import { auditView } from './audit-view';
 import { cellView } from './cell-view';
 import { columnView } from './column-view';
 import { columnMeasures, type ColumnMeasures } from './column-measures';
 import { influenceView } from './influence-view';
+import { planView } from './plan-view';
 import { posteriorView } from './posterior-view';
+import { rehearsalView } from './rehearsal-view';
+import { sensitivityView } from './sensitivity-view';
 import type { Handled, Handlers } from './serve';
 
 /** A study and the tally that was taken under `key`. */
@@ -37,6 +53,12 @@ export type MatrixCalls = {
   replicas: { argument: AtTally & { indices: number[] }; result: Replicas };
   audit: { argument: AtTally; result: AuditView };
   influence: { argument: AtTally; result: InfluenceView };
+  plan: { argument: AtTally & Pick<Checked<'plan'>, 'target'>; result: PlanView };
+  priorSensitivity: { argument: AtTally; result: PriorSensitivityView };
+  /** Notes are `{ done, total }` repetitions. */
+  rehearse: { argument: AtTally & { repetitions: number }; result: RehearsalView };
+  /** Notes are `{ done, total }` blocks. */
+  replicasNeeded: { argument: AtTally & { digits: number }; result: ReplicasNeeded };
 };
 
 /** A tally with its posterior under a study's prior; the summary is worked out when it is first asked for. */
@@ -79,6 +101,17 @@ export function matrixTask(): Handlers<MatrixCalls> {
     replicas: ({ indices, ...at }) => ({ result: replicasOf(analysed(at), at.study.ensemble.seed, indices) }),
     audit: (at) => timed(() => auditView(audited(at))),
     influence: (at) => timed(() => influenceView(audited(at))),
+    plan: ({ target, ...at }) => timed(() => planView(audited(at), target)),
+    priorSensitivity: (at) => timed(() => sensitivityView(analysed(at))),
+    rehearse: ({ repetitions, ...at }, note) => timed(() => rehearsalView(audited(at), repetitions, note)),
+    replicasNeeded: ({ digits, ...at }, note) =>
+      timed(() => {
+        const { credibility, ensemble } = at.study;
+        const { analysis, reference } = audited(at);
+        const onBlock = (done: number, total: number): void => note({ done, total });
+        const asked = { digits, credibility, seed: ensemble.seed, reference: reference.contents, onBlock };
+        return { ...replicasNeeded({ ...asked, ensemble: analysis.ensemble() }), seconds: 0 };
+      }),
   };
 }
 
