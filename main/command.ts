@@ -115,6 +115,25 @@ function program(): Command {
       if (!(await verify(bundle, options, surroundings))) process.exitCode = DOES_NOT_HOLD;
     });
   entasis
+    .command('draw')
+    .description("replicas from a bundle's posterior into one NPY file: more of them, or under another seed")
+    .argument('<bundle>', 'folder of a bundle')
+    .requiredOption('--out <file>', 'the NPY file to write')
+    .addOption(new Option('--replicas <n>', "how many; by default as many as the bundle's").argParser(wholeNumber(0)))
+    .addOption(
+      new Option('--seed <n>', "by default the bundle's: the first replicas are then the bundle's own").argParser(
+        wholeNumber(0),
+      ),
+    )
+    .addOption(workersOption())
+    .addOption(jsonOption())
+    .action(async (bundle: string, options) => {
+      startEarly(DRAW_WORKER, options.workers);
+      const { draw } = await import('./commands/draw');
+      await draw(bundle, options, surroundings);
+    });
+
+  entasis
     .command('convert')
     .description('a bundle as one file of another format')
     .argument('<bundle>', 'folder of a bundle')
