@@ -31,6 +31,26 @@ export class MemoryBytes implements SyncBytes {
   close(): void {}
 }
 
+/** Chunks as they arrive, handed out in pieces as large as they are asked for. */
+export class Chunks {
+  private rest: Uint8Array = new Uint8Array(0);
+
+  /** `next` gives the next chunk, `null` at the end. */
+  constructor(private readonly next: () => Promise<Uint8Array | null>) {}
+
+  async fill(into: Uint8Array): Promise<number> {
+    if (this.rest.length === 0) {
+      const chunk = await this.next();
+      if (chunk === null) return 0;
+      this.rest = chunk;
+    }
+    const got = Math.min(into.length, this.rest.length);
+    into.set(this.rest.subarray(0, got));
+    this.rest = this.rest.subarray(got);
+    return got;
+  }
+}
+
 /** The bytes `[start, end)` of a file as they stand, read at once: no turn of the event loop a block. */
 export class PlainBytes implements SyncBytes {
   private readonly file: number;

@@ -1,7 +1,7 @@
 import { createReadStream, type ReadStream } from 'node:fs';
 import { constants, createGunzip, type Gunzip } from 'node:zlib';
 import { InputError } from '../study/input-error';
-import { firstBytes, PlainBytes, unreadable, type ByteSource } from './byte-source';
+import { Chunks, firstBytes, PlainBytes, unreadable, type ByteSource } from './byte-source';
 
 /** Bytes handed to the decoder at a time: a damage is placed to within as much. */
 const STEP = 65_536;
@@ -11,8 +11,8 @@ const OUTPUT = 262_144;
 export class GzipBytes implements ByteSource {
   private readonly input: ReadStream;
   private readonly gunzip: Gunzip;
-  private readonly chunks: AsyncIterator<Uint8Array>;
-  private rest: Uint8Array = new Uint8Array(0);
+  private readonly stream: AsyncIterator<Uint8Array>;
+  private readonly chunks = new Chunks(() => this.nextChunk());
 
   constructor(
     private readonly path: string,
@@ -22,23 +22,15 @@ export class GzipBytes implements ByteSource {
     this.gunzip = createGunzip({ chunkSize: OUTPUT });
     this.input.on('error', (cause) => this.gunzip.destroy(unreadable(name, cause)));
     this.input.pipe(this.gunzip);
-    this.chunks = this.gunzip[Symbol.asyncIterator]() as AsyncIterator<Uint8Array>;
+    this.stream = this.gunzip[Symbol.asyncIterator]() as AsyncIterator<Uint8Array>;
   }
 
   get consumed(): number {
     return this.gunzip.bytesWritten;
   }
 
-  async fill(into: Uint8Array): Promise<number> {
-    if (this.rest.length === 0) {
-      const { done, value } = await this.nextChunk();
-      if (done) return this.checkEnd();
-      this.rest = value;
-    }
-    const got = Math.min(into.length, this.rest.length);
-    into.set(this.rest.subarray(0, got));
-    this.rest = this.rest.subarray(got);
-    return got;
+  fill(into: Uint8Array): Promise<number> {
+    return this.chunks.fill(into);
   }
 
   close(): void {
@@ -46,16 +38,19 @@ export class GzipBytes implements ByteSource {
     this.gunzip.destroy();
   }
 
-  private async nextChunk(): Promise<IteratorResult<Uint8Array>> {
+  private async nextChunk(): Promise<Uint8Array | null> {
     try {
-      return await this.chunks.next();
+      const { done, value } = await this.stream.next();
+      if (!done) return value;
     } catch (cause) {
       throw cause instanceof InputError ? cause : this.damage(cause as NodeJS.ErrnoException);
     }
+    this.checkEnd();
+    return null;
   }
 
   /** zlib ends quietly at bytes that begin no further member: rows may be lost there unless they are mere padding. */
-  private checkEnd(): number {
+  private checkEnd(): void {
     const end = this.gunzip.bytesWritten;
     const behind = new PlainBytes(this.path, this.name, end);
     const bytes = new Uint8Array(STEP);
@@ -68,7 +63,6 @@ export class GzipBytes implements ByteSource {
     } finally {
       behind.close();
     }
-    return 0;
   }
 
   private damage(cause: NodeJS.ErrnoException): InputError {

@@ -3,7 +3,7 @@ import { closeSync } from 'node:fs';
 import type { Readable } from 'node:stream';
 import { open, type Entry, type ZipFile } from 'yauzl';
 import { InputError } from '../study/input-error';
-import { openFile, sizeOf, type ByteSource } from './byte-source';
+import { Chunks, openFile, sizeOf, type ByteSource } from './byte-source';
 
 /** More entries are no table of columns. */
 const MOST_ENTRIES = 10_000;
@@ -53,8 +53,8 @@ export class ZipEntries {
 /** The content of one entry, its checksum compared at the end. */
 export class EntryBytes implements ByteSource {
   consumed = 0;
-  private readonly chunks: AsyncIterator<Uint8Array>;
-  private rest: Uint8Array = new Uint8Array(0);
+  private readonly content: AsyncIterator<Uint8Array>;
+  private readonly chunks = new Chunks(() => this.next());
   private checksum = 0;
 
   constructor(
@@ -62,18 +62,11 @@ export class EntryBytes implements ByteSource {
     private readonly entry: Entry,
     private readonly name: string,
   ) {
-    this.chunks = stream[Symbol.asyncIterator]() as AsyncIterator<Uint8Array>;
+    this.content = stream[Symbol.asyncIterator]() as AsyncIterator<Uint8Array>;
   }
 
   async fill(into: Uint8Array): Promise<number> {
-    if (this.rest.length === 0) {
-      const next = await this.next();
-      if (next === null) return 0;
-      this.rest = next;
-    }
-    const got = Math.min(into.length, this.rest.length);
-    into.set(this.rest.subarray(0, got));
-    this.rest = this.rest.subarray(got);
+    const got = await this.chunks.fill(into);
     this.consumed += got;
     return got;
   }
@@ -85,7 +78,7 @@ export class EntryBytes implements ByteSource {
   private async next(): Promise<Uint8Array | null> {
     let result: IteratorResult<Uint8Array>;
     try {
-      result = await this.chunks.next();
+      result = await this.content.next();
     } catch (cause) {
       throw damaged(this.name, cause, this.entry);
     }

@@ -27,14 +27,7 @@ import { describe, expect, test } from 'vitest';
 import { arrow } from '../../../src/events/arrow';
 import { readerFor } from '../../../src/events/formats';
 import { inspectFile } from '../../../src/events/inspect';
-import { fileOf, needsOf, readAll } from './gather';
-
-async function refusal(work: Promise<unknown>): Promise<string> {
-  return work.then(
-    () => 'read without complaint',
-    (cause: Error) => `${cause.name}: ${cause.message}`,
-  );
-}
+import { fileOf, needsOf, readAll, refusal } from './gather';
 
 /** Both forms of the format, in batches of 7 rows. */
 function written(table: Table, options = {}): { file: Uint8Array; stream: Uint8Array } {

@@ -61,3 +61,11 @@ function valueOf(column: Column, i: number): number | string | null {
   if (column.as === 'text') return column.codes[i] < 0 ? null : column.labels[column.codes[i]];
   return column.high[i] === 0 && column.low[i] === 0 ? null : `${column.high[i]}:${column.low[i]}`;
 }
+
+/** How the work ends that must fail: the error's name and message. */
+export async function refusal(work: Promise<unknown>): Promise<string> {
+  return work.then(
+    () => 'read without complaint',
+    (cause: Error) => `${cause.name}: ${cause.message}`,
+  );
+}

@@ -5,34 +5,10 @@ import { describe, expect, test } from 'vitest';
 import { readerFor } from '../../../src/events/formats';
 import { hdf5 } from '../../../src/events/hdf5';
 import { inspectFile } from '../../../src/events/inspect';
-import { fileOf, gather, needsOf, readAll } from './gather';
+import { fileOf, gather, needsOf, readAll, refusal } from './gather';
+import { made, referenceRow, ROWS } from './reference-rows';
 
-/** Files made by h5py: see tests/reference/events/make.py. */
-const made = (name: string): string => join(import.meta.dirname, '../../reference/events', name);
-const ROWS = 1000;
-
-async function refusal(work: Promise<unknown>): Promise<string> {
-  return work.then(
-    () => 'read without complaint',
-    (cause: Error) => `${cause.name}: ${cause.message}`,
-  );
-}
-
-/** Row `i` as make.py writes it. */
-function row(i: number): Record<string, number> {
-  return {
-    e_tag: i / 4,
-    e_cluster: i % 10 === 3 ? NaN : i / 8,
-    big: i / 16,
-    short: (i % 100) - 50,
-    swapped: i - 500,
-    event: Number(9007199254740992n + BigInt(i)),
-    unsigned: Number(2n ** 63n + BigInt(i)),
-    quality: i % 3 === 0 ? 1 : 0,
-  };
-}
-
-const numbers = Object.keys(row(0));
+const numbers = Object.keys(referenceRow(0));
 
 describe('an HDF5 file of one data set a column', () => {
   test('gives numbers of any width, byte order and filter as doubles', async () => {
@@ -42,7 +18,7 @@ describe('an HDF5 file of one data set a column', () => {
       needsOf(...numbers.map((n) => `run1/${n}`)),
     );
     expect(rejects).toEqual([]);
-    expect(rows).toEqual(Array.from({ length: ROWS }, (_, i) => [i + 1, ...Object.values(row(i))]));
+    expect(rows).toEqual(Array.from({ length: ROWS }, (_, i) => [i + 1, ...Object.values(referenceRow(i))]));
     expect(placesPassed).toBe(ROWS);
     expect(bytes).toBe(readFileSync(made('columns.h5')).length);
   });
@@ -89,7 +65,7 @@ describe('an HDF5 file of one compound table', () => {
     const { rows } = await readAll(hdf5, made('table.h5'), needsOf(...numbers, 'events/table:run:text', 'event:text'));
     const expected = (i: number) => [
       i + 1,
-      ...Object.values(row(i)),
+      ...Object.values(referenceRow(i)),
       `run ${i % 4}`,
       String(9007199254740992n + BigInt(i)),
     ];

@@ -4,17 +4,10 @@ import { describe, expect, test } from 'vitest';
 import { readerFor } from '../../../src/events/formats';
 import { inspectFile } from '../../../src/events/inspect';
 import { ndjson } from '../../../src/events/ndjson';
-import { fileOf, gather, needsOf, readAll, type Gathered } from './gather';
+import { fileOf, gather, needsOf, readAll, type Gathered, refusal } from './gather';
 
 async function read(text: string | Uint8Array, ...columns: string[]): Promise<Gathered> {
   return readAll(ndjson, fileOf(text, '.ndjson'), needsOf(...columns));
-}
-
-async function refusal(work: Promise<unknown>): Promise<string> {
-  return work.then(
-    () => 'read without complaint',
-    (cause: Error) => `${cause.name}: ${cause.message}`,
-  );
 }
 
 describe('a file of one JSON object a line', () => {
@@ -150,7 +143,16 @@ describe('inspecting such a file', () => {
     expect([rows, rejected]).toEqual([4, 1]);
     expect(columns).toEqual([
       { name: 't', type: 'number', missing: 1, malformed: 0, nonFinite: 0, least: 1, greatest: 2.5, labels: null },
-      { name: 'a', type: 'text', missing: 2, malformed: 0, nonFinite: 0, least: null, greatest: null, labels: ['x', 'y'] },
+      {
+        name: 'a',
+        type: 'text',
+        missing: 2,
+        malformed: 0,
+        nonFinite: 0,
+        least: null,
+        greatest: null,
+        labels: ['x', 'y'],
+      },
       { name: 'b', type: 'text', missing: 3, malformed: 0, nonFinite: 0, least: null, greatest: null, labels: null },
     ]);
   });

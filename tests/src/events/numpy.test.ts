@@ -1,5 +1,4 @@
 import { createWriteStream, readFileSync } from 'node:fs';
-import { join } from 'node:path';
 import { pipeline } from 'node:stream/promises';
 import { ZipFile } from 'yazl';
 import { describe, expect, test } from 'vitest';
@@ -9,37 +8,14 @@ import { inspectFile } from '../../../src/events/inspect';
 import { npy } from '../../../src/events/npy';
 import { npz } from '../../../src/events/npz';
 import { parsePythonLiteral } from '../../../src/events/python-literal';
-import { fileOf, gather, needsOf, readAll } from './gather';
-
-/** Files made by NumPy: see tests/reference/events/make.py. */
-const made = (name: string): string => join(import.meta.dirname, '../../reference/events', name);
-const ROWS = 1000;
-
-async function refusal(work: Promise<unknown>): Promise<string> {
-  return work.then(
-    () => 'read without complaint',
-    (cause: Error) => `${cause.name}: ${cause.message}`,
-  );
-}
+import { fileOf, gather, needsOf, readAll, refusal } from './gather';
+import { made, referenceRow, ROWS } from './reference-rows';
 
 const failing = (reader: Reader, content: Uint8Array, ...columns: string[]): Promise<string> =>
   refusal(readAll(reader, fileOf(content, `.${reader.format}`), needsOf(...columns)));
 
-/** Row `i` as make.py writes it. */
-function row(i: number): Record<string, number> {
-  return {
-    e_tag: i / 4,
-    e_cluster: i % 10 === 3 ? NaN : i / 8,
-    big: i / 16,
-    short: (i % 100) - 50,
-    swapped: i - 500,
-    event: Number(9007199254740992n + BigInt(i)),
-    unsigned: Number(2n ** 63n + BigInt(i)),
-    quality: i % 3 === 0 ? 1 : 0,
-    half: i / 2,
-  };
-}
-
+/** The table of make.py has a column of 16-bit floats besides. */
+const row = (i: number) => ({ ...referenceRow(i), half: i / 2 });
 const numbers = Object.keys(row(0));
 const labels = ['run:text', 'name:text', 'quality:text', 'event:text'];
 const expected = Array.from({ length: ROWS }, (_, i) => {

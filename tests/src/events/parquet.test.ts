@@ -4,7 +4,7 @@ import { beforeAll, describe, expect, test } from 'vitest';
 import { readerFor } from '../../../src/events/formats';
 import { inspectFile } from '../../../src/events/inspect';
 import { parquet } from '../../../src/events/parquet';
-import { fileOf, needsOf, readAll, type Gathered } from './gather';
+import { fileOf, needsOf, readAll, type Gathered, refusal } from './gather';
 
 let connection: DuckDBConnection;
 
@@ -16,13 +16,6 @@ async function table(select: string, options = ''): Promise<string> {
   const path = fileOf('', '.parquet');
   await connection.run(`COPY (${select}) TO '${path}' (FORMAT PARQUET${options})`);
   return path;
-}
-
-async function refusal(work: Promise<unknown>): Promise<string> {
-  return work.then(
-    () => 'read without complaint',
-    (cause: Error) => `${cause.name}: ${cause.message}`,
-  );
 }
 
 async function read(select: string, ...columns: string[]): Promise<Gathered> {
@@ -212,7 +205,16 @@ describe('inspecting a Parquet file', () => {
         labels: ['run 0', 'run 1', 'run 2'],
       },
       { name: 'w', type: 'number', missing: 0, malformed: 0, nonFinite: 1, least: -4999, greatest: 0, labels: null },
-      { name: 'event', type: 'text', missing: 0, malformed: 0, nonFinite: 0, least: null, greatest: null, labels: null },
+      {
+        name: 'event',
+        type: 'text',
+        missing: 0,
+        malformed: 0,
+        nonFinite: 0,
+        least: null,
+        greatest: null,
+        labels: null,
+      },
     ]);
   });
 });
