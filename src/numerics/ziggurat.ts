@@ -138,7 +138,7 @@ export function fillExponentials(stream: RandomStream, out: Float64Array, { reje
 /**
  * Fills `out` with places in random layers. Those beyond the next layer's edge await a decision: they are listed as
  * `index * 256 + layer`, their number is returned. The loop that makes most of an ensemble: xoshiro128++ stands in it, two
- * steps a turn, so that its state stays in registers, and nothing is called (twice the speed of words made beforehand).
+ * steps a turn, so that its state stays in registers, and nothing is called (half as fast again as with words made beforehand).
  */
 function fillPlaces(
   state: Int32Array,
