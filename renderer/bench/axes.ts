@@ -1,5 +1,6 @@
 import type { Axis } from '../../src/study/axis';
-import { resolveAxis, type Study } from '../../src/study/study';
+import { resolveAxis } from '../../src/study/resolve-axis';
+import type { Study } from '../../src/study/study';
 
 /** Both axes of a checked study with what belongs to them. */
 export interface Axes {

@@ -1,4 +1,5 @@
-import { resolveAxis, type AxisDocument } from '../../src/study/study';
+import { resolveAxis } from '../../src/study/resolve-axis';
+import type { AxisDocument } from '../../src/study/study';
 
 type Spacing = 'linear' | 'log';
 

@@ -1,3 +1,4 @@
+import { untrack } from 'svelte';
 import type { Answer, Argument, CallName, Refusal, Result } from '../../main/bridge';
 
 /**
@@ -20,7 +21,8 @@ export class Latest<Name extends CallName, Question = Argument<Name>> {
     if (key === this.#asked) return;
     this.#asked = key;
     this.#next = { key, argument };
-    if (!this.waiting) void this.#work();
+    // Effects ask; what asking reads and writes must not make them run again.
+    if (!untrack(() => this.waiting)) untrack(() => void this.#work());
   }
 
   /** Forgets the value and every question. */

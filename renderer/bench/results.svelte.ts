@@ -9,7 +9,8 @@ import type {
   Refusal,
   TallyView,
 } from '../../main/bridge';
-import { resolveAxis, type Study } from '../../src/study/study';
+import { resolveAxis } from '../../src/study/resolve-axis';
+import type { Study } from '../../src/study/study';
 import { axesOf, type Axes } from './axes';
 import type { Jobs } from './jobs.svelte';
 import { Latest } from './latest.svelte';

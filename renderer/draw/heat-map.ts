@@ -1,11 +1,8 @@
-import { interpolateMagma, interpolatePuOr, rgb } from 'd3';
+import { interpolateBuPu, interpolateMagma, interpolatePuOr, rgb } from 'd3';
 import { makeScale, type Extent } from './scale';
 
 /** Colours a table holds: finer than any screen shows. */
 export const SHADES = 1024;
-/** Part of the colour map in use: its very ends cannot be told from paper and ink. */
-const USED = { from: 0.02, to: 1 };
-
 /** A colour as a canvas' 32-bit pixel holds it on a little-endian machine. */
 export function packed(colour: string): number {
   const { r, g, b } = rgb(colour);
@@ -13,12 +10,11 @@ export function packed(colour: string): number {
 }
 
 /**
- * The matrix' one scale, perceptually even and safe for colour-blind eyes: from paper to ink, so that on either theme
- * what is small is quiet.
+ * The scale of the matrix, perceptually even and safe for colour-blind eyes. What is small is quiet on either theme:
+ * the scale begins at the light of the paper and gains ink, or begins in the dark and gains light.
  */
 export function sequentialColour(share: number, dark: boolean): string {
-  const t = USED.from + (USED.to - USED.from) * (dark ? share : 1 - share);
-  return interpolateMagma(t);
+  return dark ? interpolateMagma(share) : interpolateBuPu(share);
 }
 
 /** For differences alone: orange below, purple above, nothing in the middle. */

@@ -5,31 +5,31 @@ import { bandTitle, outcomeTitle } from './places';
 
 export interface FlagWords {
   title: string;
-  /** What a flagged place has, in half a sentence. */
-  says: string;
+  /** What is held against the limit. */
+  measure: string;
   limit: keyof Limits | null;
 }
 
 export const FLAGS: Record<FlagId, FlagWords> = {
-  empty: { title: 'Empty', says: 'no event in the column', limit: null },
-  thin: { title: 'Thin', says: 'too few effective entries', limit: 'thin' },
-  'prior-led': { title: 'Led by the prior', says: 'the prior weighs too much', limit: 'prior-led' },
-  lossy: { title: 'Lossy', says: 'efficiency below the limit', limit: 'lossy' },
-  'spill-below': { title: 'Spill below', says: 'too much below the window', limit: 'spill-below' },
-  'spill-above': { title: 'Spill above', says: 'too much above the window', limit: 'spill-above' },
-  'feed-in': { title: 'Feed-in', says: 'too much from outside the true window', limit: 'feed-in' },
-  unstable: { title: 'Unstable', says: 'too little stays in its bin', limit: 'unstable' },
-  impure: { title: 'Impure', says: 'too much comes from other columns', limit: 'impure' },
-  'non-monotone': { title: 'Not monotone', says: 'reconstructed lower than the column before', limit: null },
-  'slope-bias': { title: 'Slope bias', says: 'depends on the spectrum inside the bin', limit: 'slope-bias' },
-  'run-drift': { title: 'Run drift', says: 'runs differ', limit: 'run-drift-distance' },
-  'single-event': { title: 'Single event', says: 'one event carries too much weight', limit: 'single-event' },
-  'negative-weight': { title: 'Negative weight', says: 'a cell has no positive weight', limit: null },
-  duplicate: { title: 'Duplicates', says: 'event identities repeat', limit: null },
-  'ill-conditioned': { title: 'Ill-conditioned', says: 'cannot be inverted fully', limit: null },
+  empty: { title: 'Empty', measure: 'Events', limit: null },
+  thin: { title: 'Thin', measure: 'Effective entries', limit: 'thin' },
+  'prior-led': { title: 'Led by the prior', measure: 'Prior share', limit: 'prior-led' },
+  lossy: { title: 'Lossy', measure: 'Efficiency', limit: 'lossy' },
+  'spill-below': { title: 'Spill below', measure: 'Probability', limit: 'spill-below' },
+  'spill-above': { title: 'Spill above', measure: 'Probability', limit: 'spill-above' },
+  'feed-in': { title: 'Feed-in', measure: 'Share from outside', limit: 'feed-in' },
+  unstable: { title: 'Unstable', measure: 'Stability', limit: 'unstable' },
+  impure: { title: 'Impure', measure: 'Purity', limit: 'impure' },
+  'non-monotone': { title: 'Not monotone', measure: 'Step of the mean', limit: null },
+  'slope-bias': { title: 'Slope bias', measure: 'Slope bias, sd', limit: 'slope-bias' },
+  'run-drift': { title: 'Run drift', measure: 'Largest distance of a run', limit: 'run-drift-distance' },
+  'single-event': { title: 'Single event', measure: 'Share of the squared weight', limit: 'single-event' },
+  'negative-weight': { title: 'Negative weight', measure: 'Cells', limit: null },
+  duplicate: { title: 'Duplicates', measure: 'Repeated identities', limit: null },
+  'ill-conditioned': { title: 'Ill-conditioned', measure: 'Resolvable components', limit: null },
   'matrix-limited': {
     title: 'Limited by the matrix',
-    says: 'calibration statistics outweigh the data’s',
+    measure: 'Ratio of variances',
     limit: 'matrix-limited',
   },
 };

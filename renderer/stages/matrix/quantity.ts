@@ -1,3 +1,4 @@
+import { binRange } from '../../../src/study/axis';
 import type { KnownMatrix } from '../../bench/results.svelte';
 import type { Extent } from '../../draw/scale';
 
@@ -40,22 +41,39 @@ function effectiveCells({ tally }: KnownMatrix): Float64Array {
   return weights.map((w, i) => (w > 0 && squares[i]! > 0 ? w ** 2 / squares[i]! : 0));
 }
 
-/** What the colours span. A log scale begins at the least cell above zero, at most this many decades down. */
+export type Spanned = Extent & { over: boolean };
+
+/** A log scale begins at the least cell above zero, at most this many decades down. */
 const MOST_DECADES = 6;
 
-export function colourExtent(cells: ArrayLike<number>, kind: Extent['kind']): Extent {
+/**
+ * The colours span the cells of the window: one outer cell that holds nearly everything, as `below` to `lost` often
+ * does, would leave the others pale. What lies above has the last colour; `over` says that there is such a cell.
+ */
+export function colourExtent(
+  cells: ArrayLike<number>,
+  kind: Extent['kind'],
+  { axes, posterior }: KnownMatrix,
+): Spanned {
+  const columns = binRange(axes.true);
+  const bins = binRange(axes.reconstructed);
   let least = Infinity;
   let greatest = 0;
+  let over = 0;
   for (let i = 0; i < cells.length; i++) {
     const x = cells[i]!;
     if (!Number.isFinite(x) || x <= 0) continue;
+    over = Math.max(over, x);
+    const column = Math.floor(i / posterior.outcomes);
+    const outcome = i % posterior.outcomes;
+    if (column < columns.first || column >= columns.end || outcome < bins.first || outcome >= bins.end) continue;
     if (x < least) least = x;
     if (x > greatest) greatest = x;
   }
-  if (greatest === 0) return { kind, from: kind === 'log' ? 0.1 : 0, to: 1 };
-  if (kind === 'linear') return { kind, from: 0, to: greatest };
+  if (greatest === 0) return { kind, from: kind === 'log' ? 0.1 : 0, to: 1, over: over > 1 };
+  if (kind === 'linear') return { kind, from: 0, to: greatest, over: over > greatest };
   const from = Math.max(least, greatest / 10 ** MOST_DECADES);
-  return { kind, from: from < greatest ? from : greatest / 10, to: greatest };
+  return { kind, from: from < greatest ? from : greatest / 10, to: greatest, over: over > greatest };
 }
 
 /** A cell is doubtful where its interval is wider than this share of its mean. */
