@@ -40,6 +40,9 @@ export interface BuildOptions {
   onProgress?: (progress: Progress) => void;
 }
 
+/** Blocks may be drawn this far ahead of the writing, which waits while the audit and the tables are made. */
+const AHEAD = 64 << 20;
+
 /** A bundle as it was written. */
 export interface BuiltBundle {
   out: string;
@@ -60,7 +63,15 @@ export async function buildBundle(options: BuildOptions): Promise<BuiltBundle> {
   try {
     const { replicas, seed } = study.ensemble;
     const path = folder.pathOf(REPLICAS);
-    const drawing = drawEnsemble({ ...options, parameters: model.posterior, seed, replicas, path, place: out });
+    const drawing = drawEnsemble({
+      ...options,
+      parameters: model.posterior,
+      seed,
+      replicas,
+      path,
+      place: out,
+      ahead: AHEAD,
+    });
     // Audit and tables are made while the workers draw; a fault in them must not leave the drawing without a listener.
     drawing.catch(() => undefined);
     const contents = { version, ...bundleSource(source), ...analyseModel(model, sources) };

@@ -125,6 +125,7 @@ function program(): Command {
         wholeNumber(0),
       ),
     )
+    .option('--hash', 'tell the SHA-256 of the file')
     .addOption(workersOption())
     .addOption(jsonOption())
     .action(async (bundle: string, options) => {

@@ -15,6 +15,8 @@ export interface DrawOptions {
   path: string;
   /** Names the place in errors. */
   place: string;
+  /** Bytes that may be drawn ahead of the writing, where the main thread has other work meanwhile. */
+  ahead?: number;
   drawWorker: URL;
   workers: number;
   signal?: AbortSignal | undefined;
@@ -22,11 +24,14 @@ export interface DrawOptions {
 }
 
 /**
- * Draws an ensemble in worker threads into an NPY file, `[replica, column, outcome]`, and returns its size and
- * SHA-256. The bytes depend on parameters, seed and number of replicas alone. Throws `Cancelled` on the signal and
+ * Draws an ensemble in worker threads into an NPY file, `[replica, column, outcome]`, and returns its size and, where
+ * `hashed`, its SHA-256 (else empty). The bytes depend on parameters, seed and number of replicas alone. Throws `Cancelled` on the signal and
  * `InputError` where the place has no room.
  */
-export async function drawEnsemble(options: DrawOptions): Promise<{ bytes: number; sha256: string; shape: number[] }> {
+export async function drawEnsemble(
+  options: DrawOptions,
+  hashed = true,
+): Promise<{ bytes: number; sha256: string; shape: number[] }> {
   const { parameters, replicas, path, place } = options;
   const cells = parameters.columns * parameters.outcomes;
   const shape = [replicas, parameters.columns, parameters.outcomes];
@@ -39,16 +44,14 @@ export async function drawEnsemble(options: DrawOptions): Promise<{ bytes: numbe
     } catch (cause) {
       throw cannotWrite(place, cause);
     }
-    hash.update(piece);
+    if (hashed) hash.update(piece);
     bytes += piece.length;
   };
   try {
     put(npyHeader('<f8', shape));
     // One writer, in order: workers that write to one file wait for each other longer than the writing takes.
-    const slots = new Slots(
-      Math.max(options.workers + 1, Math.floor(AHEAD_BYTES / (BLOCK * cells * 8))),
-      BLOCK * cells * 8,
-    );
+    const blockBytes = BLOCK * cells * 8;
+    const slots = new Slots(Math.max(options.workers + 2, Math.floor((options.ahead ?? 0) / blockBytes)), blockBytes);
     const inOrder = new InOrder<SharedArrayBuffer>((into, block) => {
       put(new Uint8Array(into, 0, Math.min(BLOCK, replicas - block * BLOCK) * cells * 8));
       slots.give(into);
@@ -61,7 +64,7 @@ export async function drawEnsemble(options: DrawOptions): Promise<{ bytes: numbe
   } finally {
     closeSync(file);
   }
-  return { bytes, sha256: hash.digest('hex'), shape };
+  return { bytes, sha256: hashed ? hash.digest('hex') : '', shape };
 }
 
 /** Draws an ensemble again and returns the first cell of the file that differs, or `null`. */
@@ -94,9 +97,6 @@ async function overBlocks(
     });
   });
 }
-
-/** Blocks may be drawn this far ahead of the writing, which waits while the tables of a bundle are made. */
-const AHEAD_BYTES = 64 << 20;
 
 /** Shared memory for blocks, handed out in the order it is asked for: memory stays bounded however many blocks. */
 class Slots {

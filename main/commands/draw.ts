@@ -14,6 +14,7 @@ export interface DrawFlags {
   replicas?: number;
   seed?: number;
   workers: number;
+  hash?: boolean;
   json?: boolean;
 }
 
@@ -34,18 +35,24 @@ export async function draw(bundle: string, flags: DrawFlags, around: Surrounding
     workers: flags.workers,
   };
   try {
-    const drawn = await drawEnsemble({
-      ...around,
-      ...options,
-      path: partial,
-      place: out,
-      onProgress: line.show.bind(line),
-    });
+    const drawn = await drawEnsemble(
+      {
+        ...around,
+        ...options,
+        path: partial,
+        place: out,
+        onProgress: line.show.bind(line),
+      },
+      flags.hash ?? false,
+    );
     renameSync(partial, out);
     line.clear();
-    const told = { out, ...drawn, seed: options.seed };
+    const { bytes, shape, sha256 } = drawn;
+    const told = { out, bytes, shape, seed: options.seed, ...(flags.hash && { sha256 }) };
     process.stdout.write(
-      flags.json ? `${JSON.stringify(told)}\n` : `${out} [${drawn.shape.join(', ')}], seed ${told.seed}\n`,
+      flags.json
+        ? `${JSON.stringify(told)}\n`
+        : `${out} [${shape.join(', ')}], seed ${told.seed}${flags.hash ? `, SHA-256 ${sha256}` : ''}\n`,
     );
   } catch (error) {
     rmSync(partial, { force: true });

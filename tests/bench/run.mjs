@@ -1,7 +1,7 @@
 // `npm run bench`: Entasis against the script a practitioner writes today, in the same run on the same machine, as ratios.
 // `npm run bench -- --large` adds the two figures that need time and disk: 50 M rows of Parquet, an ensemble of 8 GB.
 import { execFileSync } from 'node:child_process';
-import { existsSync, mkdtempSync, readFileSync, rmSync, statSync, writeFileSync } from 'node:fs';
+import { existsSync, mkdtempSync, rmSync, statSync, writeFileSync } from 'node:fs';
 import { availableParallelism, tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { fileURLToPath } from 'node:url';
@@ -11,7 +11,7 @@ import { writeEvents } from './make-events.mjs';
 import { inTurn, wholeProcess } from './whole-process.mjs';
 
 const LARGE = process.argv.includes('--large');
-const RUNS = 3;
+const RUNS = 5;
 const ROWS = 4_000_000;
 const ENTASIS = fileURLToPath(new URL('../../out/main/command.js', import.meta.url));
 const PEER = fileURLToPath(new URL('./peer.py', import.meta.url));
@@ -88,15 +88,28 @@ async function csvTally(peer) {
 }
 
 async function ensemble(study) {
-  const ours = entasis('build', study, '--from', at('events.part'), '--out', at('events.bundle'));
-  const {
-    ratio,
-    ours: a,
-    theirs: b,
-    peak,
-  } = await inTurn(ours, python('ensemble', at('counts.npy'), '1942', at('replicas.npy')), RUNS);
+  const part = await wholeProcess(process.execPath, [
+    ENTASIS,
+    'build',
+    study,
+    '--from',
+    at('events.part'),
+    '--out',
+    at('events.bundle'),
+  ]);
   report(
-    'ensemble of 20 M cells to disk with its whole bundle, whole process',
+    'bundle of that tally with 20 M cells, its audit and tables, whole process',
+    `${number(part.seconds)} s`,
+    '-',
+    '-',
+    `peak ${number(part.peak, 0)} MB`,
+  );
+  const before = () => ['draws.npy', 'replicas.npy'].forEach((name) => rmSync(at(name), { force: true }));
+  const ours = { ...entasis('draw', at('events.bundle'), '--out', at('draws.npy')), before };
+  const theirs = { ...python('ensemble', at('counts.npy'), '1942', at('replicas.npy')), before };
+  const { ratio, ours: a, theirs: b, peak } = await inTurn(ours, theirs, RUNS);
+  report(
+    'ensemble of 20 M cells to disk, whole process',
     `${number(a)} s`,
     `${number(b)} s`,
     number(ratio),
@@ -136,18 +149,15 @@ async function parquet(count) {
   );
 }
 
-async function largeEnsemble(study) {
+async function largeEnsemble() {
   const replicas = Math.ceil(8e9 / 8 / ((BINS + 2) * (BINS + 3)));
-  const document = JSON.parse(readFileSync(study, 'utf8'));
-  document.ensemble.replicas = replicas;
-  writeFileSync(at('large.study.json'), JSON.stringify(document));
   const { command, args } = entasis(
-    'build',
-    at('large.study.json'),
-    '--from',
-    at('events.part'),
+    'draw',
+    at('events.bundle'),
+    '--replicas',
+    String(replicas),
     '--out',
-    at('large.bundle'),
+    at('large.npy'),
   );
   const { seconds, peak } = await wholeProcess(command, args);
   report(
@@ -168,5 +178,5 @@ if (peer) {
   await kernel();
 }
 await parquet(LARGE ? 50_000_000 : 10_000_000);
-if (LARGE) await largeEnsemble(study);
+if (LARGE && peer) await largeEnsemble();
 console.table(rows.map(([what, ours, theirs, ratio, note]) => ({ what, ours, peer: theirs, ratio, note })));
