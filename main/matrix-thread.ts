@@ -1,4 +1,4 @@
-import { Cancelled } from '../src/study/input-error';
+import { Cancelled, InputError } from '../src/study/input-error';
 import type { KeyedTally } from './study-events';
 import { Pool } from './pool';
 import type { MatrixCalls } from './workers/matrix-task';
@@ -31,6 +31,10 @@ export class MatrixThread {
       const asking = pool.call(0, name, { ...argument, key } as MatrixCalls[N]['argument'], job.onNote);
       await sending;
       return await asking;
+    } catch (error) {
+      // A worker that failed otherwise than by bad input may be gone: the next call starts another.
+      if (!(error instanceof InputError) && this.pool === pool) await this.end();
+      throw error;
     } finally {
       job.signal?.removeEventListener('abort', cancel);
     }

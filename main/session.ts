@@ -14,6 +14,7 @@ import { studyCalls } from './calls/study-calls';
 import { Chosen } from './chosen';
 import { Jobs } from './jobs';
 import { Keepsakes, keepsakesFolder } from './keepsakes';
+import { Lease } from './lease';
 import { MatrixThread } from './matrix-thread';
 import { refusalOf } from './refusal';
 import { StudyEvents } from './study-events';
@@ -87,7 +88,8 @@ export class Session {
   /** Stops all work and lets go of files and workers. */
   async close(): Promise<void> {
     this.desk.jobs.cancelAll();
-    await Promise.all([this.desk.events.close(), this.desk.matrix.end()]);
+    const { events, matrix, inspectors } = this.desk;
+    await Promise.all([events.close(), matrix.end(), inspectors.end()]);
   }
 }
 
@@ -108,6 +110,7 @@ function deskOf(options: SessionOptions, tell: (notice: Notice) => void): Desk {
     keepsakes: new Keepsakes(options.keepsakes ?? keepsakesFolder()),
     events: new StudyEvents({ readWorker: workerFiles.read, workers, keep }),
     matrix: new MatrixThread(workerFiles.matrix),
+    inspectors: new Lease(workerFiles.inspect),
     desktop,
     now: () => performance.now(),
     tell,

@@ -2,8 +2,10 @@ import type { CallName, Checked, Notice, Result } from '../bridge';
 import type { Chosen } from '../chosen';
 import type { Jobs } from '../jobs';
 import type { Keepsakes } from '../keepsakes';
+import type { Lease } from '../lease';
 import type { MatrixThread } from '../matrix-thread';
 import type { StudyEvents } from '../study-events';
+import type { InspectCalls } from '../workers/inspect-task';
 
 /** A function for each of some calls, with the checked argument in and the result out. */
 export type Handlers<Name extends CallName> = {
@@ -41,6 +43,7 @@ export interface Desk {
   keepsakes: Keepsakes;
   events: StudyEvents;
   matrix: MatrixThread;
+  inspectors: Lease<InspectCalls>;
   desktop: Desktop | null;
   now: () => number;
   tell: (notice: Notice) => void;
