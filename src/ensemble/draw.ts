@@ -1,3 +1,4 @@
+import { exp, log } from '../numerics/exp-log';
 import { fillVariatesAbove, logGammaVariate } from '../numerics/gamma-variate';
 import { PURPOSE, streamOf, type RandomStream } from '../numerics/random';
 import { fillExponentials, fillHalfNormals } from '../numerics/ziggurat';
@@ -101,7 +102,7 @@ function halveSquares(values: Float64Array): void {
 /** Marsaglia and Tsang's step below shape 1: times `U^(1/a)`, which is `exp(-E/a)` with `E` exponential. */
 function boost({ below, exponentials, reciprocal, room }: ColumnPlan, stream: RandomStream): void {
   fillExponentials(stream, exponentials, room);
-  for (let i = 0; i < below.length; i++) below[i]! *= Math.exp(-exponentials[i]! * reciprocal[i]!);
+  for (let i = 0; i < below.length; i++) below[i]! *= exp(-exponentials[i]! * reciprocal[i]!);
 }
 
 function multiply(values: Float64Array, factors: Float64Array): void {
@@ -111,10 +112,10 @@ function multiply(values: Float64Array, factors: Float64Array): void {
 /** Logarithms of the variates, brought to a largest variate of 1. */
 function fillFromLogs({ variates, shape, scale }: ColumnPlan, stream: RandomStream): void {
   for (let i = 0; i < variates.length; i++) {
-    variates[i] = logGammaVariate(stream, shape[i]!) + (scale ? Math.log(scale[i]!) : 0);
+    variates[i] = logGammaVariate(stream, shape[i]!) + (scale ? log(scale[i]!) : 0);
   }
   const most = variates.reduce((a, b) => Math.max(a, b));
-  for (let i = 0; i < variates.length; i++) variates[i] = Math.exp(variates[i]! - most);
+  for (let i = 0; i < variates.length; i++) variates[i] = exp(variates[i]! - most);
 }
 
 /** In two strands, because an addition waits for the one before it. */

@@ -1,3 +1,4 @@
+import { exp, log } from './exp-log';
 import type { RandomStream } from './random';
 import { fillNormals, type Room } from './ziggurat';
 
@@ -20,15 +21,15 @@ export function gammaVariate(stream: RandomStream, shape: number): number {
   if (shape === 0.5) return 0.5 * stream.halfNormal() ** 2;
   if (shape === 1) return stream.exponential();
   const x = variateAbove(stream, offsetOf(shape), slopeOf(shape));
-  return shape < 1 ? x * Math.exp(-stream.exponential() / shape) : x;
+  return shape < 1 ? x * exp(-stream.exponential() / shape) : x;
 }
 
 /** The logarithm of a gamma variate, also where the variate itself would underflow; shape 0 gives `-Infinity`. */
 export function logGammaVariate(stream: RandomStream, shape: number): number {
   checkShape(shape);
   if (shape === 0) return -Infinity;
-  const log = Math.log(variateAbove(stream, offsetOf(shape), slopeOf(shape)));
-  return shape < 1 ? log - stream.exponential() / shape : log;
+  const boosted = log(variateAbove(stream, offsetOf(shape), slopeOf(shape)));
+  return shape < 1 ? boosted - stream.exponential() / shape : boosted;
 }
 
 export function checkShape(shape: number): void {
@@ -113,5 +114,21 @@ function isInside(u: number, offset: number, t: number): boolean {
 function isAccepted(stream: RandomStream, u: number, offset: number, t: number): boolean {
   if (t <= -1) return false;
   const uniform = (u + (stream.word() + 0.5) * 2 ** -32) * 2 ** -32;
-  return Math.log(uniform) < 3 * offset * (Math.log1p(t) - t * (1 - t * (0.5 - t / 3)));
+  return log(uniform) < 3 * offset * fourthOrder(t);
+}
+
+/** Below this the logarithm's rounding would count, times an offset that grows as `t` shrinks: its series is summed instead. */
+const SERIES_UP_TO = 0.25;
+
+/** `ln(1 + t) - t + t^2 / 2 - t^3 / 3`. */
+function fourthOrder(t: number): number {
+  if (Math.abs(t) > SERIES_UP_TO) return log(1 + t) - t * (1 - t * (0.5 - t / 3));
+  let power = -t * t * t * t;
+  let sum = power / 4;
+  for (let k = 5; ; k++) {
+    power *= -t;
+    const next = sum + power / k;
+    if (next === sum) return sum;
+    sum = next;
+  }
 }

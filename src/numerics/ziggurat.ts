@@ -1,3 +1,4 @@
+import { exp, log } from './exp-log';
 import type { RandomStream } from './random';
 
 const LAYERS = 256;
@@ -21,11 +22,11 @@ interface Layers {
   step: Float64Array;
 }
 
-const normalDensity = (x: number): number => Math.exp((-x * x) / 2);
-const exponentialDensity = (x: number): number => Math.exp(-x);
+const normalDensity = (x: number): number => exp((-x * x) / 2);
+const exponentialDensity = (x: number): number => exp(-x);
 
-export const NORMAL = layersOf(NORMAL_TAIL, NORMAL_AREA, normalDensity, (y) => Math.sqrt(-2 * Math.log(y)));
-export const EXPONENTIAL = layersOf(EXPONENTIAL_TAIL, EXPONENTIAL_AREA, exponentialDensity, (y) => -Math.log(y));
+export const NORMAL = layersOf(NORMAL_TAIL, NORMAL_AREA, normalDensity, (y) => Math.sqrt(-2 * log(y)));
+export const EXPONENTIAL = layersOf(EXPONENTIAL_TAIL, EXPONENTIAL_AREA, exponentialDensity, (y) => -log(y));
 
 function layersOf(tail: number, area: number, density: (x: number) => number, inverse: (y: number) => number): Layers {
   const edge = new Float64Array(LAYERS + 1);
