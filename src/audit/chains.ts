@@ -19,8 +19,9 @@ export function effectiveDraws(chains: readonly Float64Array[]): number {
   const count = split.length * length;
   const { within, pooled } = variances(split);
   if (!(within > 0)) return count;
+  const centred = split.map(centredOf);
   const correlation = (lag: number): number => {
-    const covariance = split.reduce((sum, chain) => sum + autocovariance(chain, lag), 0) / split.length;
+    const covariance = centred.reduce((sum, chain) => sum + autocovariance(chain, lag), 0) / split.length;
     return 1 - (within - covariance) / pooled;
   };
   let sum = 0;
@@ -46,15 +47,21 @@ function variances(chains: readonly Float64Array[]): { within: number; pooled: n
   const means = Float64Array.from(chains, meanOf);
   const all = meanOf(means);
   const between = means.reduce((sum, mean) => sum + (mean - all) ** 2, 0) / (means.length - 1);
-  const within = chains.reduce((sum, chain) => sum + autocovariance(chain, 0), 0) / chains.length / (1 - 1 / length);
+  const within =
+    chains.reduce((sum, chain) => sum + autocovariance(centredOf(chain), 0), 0) / chains.length / (1 - 1 / length);
   return { within, pooled: within * (1 - 1 / length) + between };
 }
 
+/** Of a chain about 0. */
 function autocovariance(chain: Float64Array, lag: number): number {
-  const mean = meanOf(chain);
   let sum = 0;
-  for (let i = lag; i < chain.length; i++) sum += (chain[i]! - mean) * (chain[i - lag]! - mean);
+  for (let i = lag; i < chain.length; i++) sum += chain[i]! * chain[i - lag]!;
   return sum / chain.length;
+}
+
+function centredOf(chain: Float64Array): Float64Array {
+  const mean = meanOf(chain);
+  return chain.map((x) => x - mean);
 }
 
 function meanOf(values: Float64Array): number {

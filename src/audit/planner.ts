@@ -160,7 +160,7 @@ export function planFlag(input: AuditInput, reference: ReferenceSpectrum, influe
     case 'impure':
       return planBinShare(input, reference, flag, k, (column) => column === k);
     case 'matrix-limited':
-      return planMatrixShare(input, influence, flag.limit / (1 + flag.limit), [outcomePlaces(input).window.indexOf(k)]);
+      return planClear(input, influence, flag, outcomePlaces(input).window.indexOf(k));
     case 'non-monotone':
       return planGrowth(input, flag, [j - 1, j]);
     default:
@@ -196,6 +196,12 @@ function shareBehind(input: AuditInput, flag: Flag, j: number): ColumnShare | nu
     default:
       return columnShare(input, j, [j], places.window);
   }
+}
+
+/** Until a bin is no longer limited by the matrix: the later interval, as wide in proportion as the present one, shall be clear too. */
+function planClear(input: AuditInput, influence: Influence, flag: Flag, bin: number): Plan {
+  const limit = flag.limit / Math.max(1, flag.upper! / flag.value!);
+  return planMatrixShare(input, influence, limit / (1 + limit), [bin]);
 }
 
 /** A share `F` of bin `k` that `chosen` columns make of it: `dF / dp_jk = s_j (1 or 0 - F) / mu`, columns independent. */

@@ -14,14 +14,16 @@ export function multinomialInto(stream: RandomStream, trials: number, weights: F
 
 /**
  * Probability of each cell given that no cell before it was hit. The last cell of any weight has 1: rounding cannot lose a
- * trial. All 0 where every weight is.
+ * trial. All 0 where every weight is. Written into `conditionals` where it is given.
  */
-export function conditionalsOf(weights: Float64Array): Float64Array {
-  const conditionals = new Float64Array(weights.length);
+export function conditionalsOf(
+  weights: Float64Array,
+  conditionals: Float64Array = new Float64Array(weights.length),
+): Float64Array {
   let rest = 0;
   for (let i = weights.length - 1; i >= 0; i--) {
     rest += weights[i]!;
-    if (weights[i]! > 0) conditionals[i] = weights[i]! / rest;
+    conditionals[i] = weights[i]! > 0 ? weights[i]! / rest : 0;
   }
   return conditionals;
 }
