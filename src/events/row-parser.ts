@@ -35,6 +35,8 @@ export class RowParser {
   place = 0;
   private readonly kinds: Uint8Array;
   private readonly needsOf: number[][];
+  /** 1 for a field that held a number too long for the quickest way. */
+  private readonly long: Uint8Array;
   private readonly stops = new Uint8Array(256);
   private readonly fields = new Fields();
 
@@ -51,6 +53,7 @@ export class RowParser {
       if (list.length === 0) return SKIPPED;
       return list.length === 1 && needs[list[0]].as === 'number' ? NUMBER : OTHER;
     });
+    this.long = new Uint8Array(header.length);
     for (const stop of [delimiter, LINE_FEED, RETURN, QUOTE]) this.stops[stop] = 1;
   }
 
@@ -75,7 +78,7 @@ export class RowParser {
    * at a line feed at the latest, which stands at `to - 1`.
    */
   private quickly(bytes: Uint8Array, from: number, to: number): number {
-    const { kinds, needsOf, stops, builder } = this;
+    const { kinds, needsOf, stops, long, builder } = this;
     const { numbers, places, capacity } = builder;
     const { delimiter } = this.layout;
     const last = kinds.length - 1;
@@ -91,8 +94,12 @@ export class RowParser {
           while (bytes[p] === SPACE) p++;
           const begin = p;
           const into = numbers[needsOf[field][0]];
-          p = readShort(bytes, begin, into, rows);
-          if (p === begin) p = readDecimal(bytes, begin, to, into, rows);
+          if (long[field] === 0) p = readShort(bytes, begin, into, rows);
+          if (p === begin) {
+            p = readDecimal(bytes, begin, to, into, rows);
+            // One long number foretells others: none of them is to be read twice.
+            if (p > begin) long[field] = 1;
+          }
           if (p === begin || stops[bytes[p]] === 0) {
             while (stops[bytes[p]] === 0) p++;
             const end = trimmedEnd(bytes, begin, p);
