@@ -43,7 +43,7 @@ export interface Drift {
  * Whether the response changed from run to run: likelihood-ratio test of homogeneity with seeded bootstrap (one stream a
  * column), Benjamini-Hochberg over the columns, largest total-variation distance as the size. There is no posterior
  * probability of drift: a flag is `flagged` (both beyond their limits) or `clear`. Weighted columns are tested by scaled
- * Poisson variates with each outcome's own weight scale, and their distances are distances of weight shares.
+ * Poisson variates with each outcome's own weight scale; their runs are pooled by effective entries.
  */
 export function driftOf({ study, tally, posterior }: AuditInput): Drift {
   if (!tally.runs)
@@ -89,9 +89,8 @@ function placeOf(test: Homogeneity, table: GroupTable, posterior: Posterior, col
     return own > 0 ? row(g).reduce((shift, n, k) => shift + Math.abs(n / own - pool[k]! / all), 0) / 2 : null;
   });
   const prior = posterior.prior.subarray(column * outcomes, (column + 1) * outcomes);
-  const effective = posterior.effective[column]! / all;
-  const interval = distanceInterval(row(test.group), pool, prior, effective, column, study);
-  const sizes = Array.from({ length: groups }, (_, g) => sum(row(g)) * effective).filter((n) => n > 0);
+  const interval = distanceInterval(row(test.group), pool, prior, column, study);
+  const sizes = Array.from({ length: groups }, (_, g) => sum(row(g))).filter((n) => n > 0);
   return { ...interval, distances, detectable: detectableShift(sizes, test.freedom) };
 }
 
@@ -100,7 +99,6 @@ function distanceInterval(
   run: Float64Array,
   pool: Float64Array,
   prior: Float64Array,
-  effective: number,
   column: number,
   study: Study,
 ): { lower: number; upper: number } {
@@ -110,8 +108,8 @@ function distanceInterval(
   const others: Marginal = { a: 0, b: 0, method: 'exact' };
   run.forEach((n, k) => {
     const side = n > share * pool[k]! ? 'a' : 'b';
-    mine[side] += n * effective + share * prior[k]!;
-    others[side] += Math.max(0, pool[k]! - n) * effective + (1 - share) * prior[k]!;
+    mine[side] += n + share * prior[k]!;
+    others[side] += Math.max(0, pool[k]! - n) + (1 - share) * prior[k]!;
   });
   const stream = streamOf(study.ensemble.seed, PURPOSE.runDrift, column, 1);
   const draws = new Float64Array(DRAWS);
