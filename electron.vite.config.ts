@@ -35,6 +35,7 @@ export default defineConfig({
         input: {
           command: at('main/command.ts'),
           desktop: at('main/desktop.ts'),
+          library: at('src/library.ts'),
           'read-worker': worker('read'),
           'draw-worker': worker('draw'),
           'matrix-worker': worker('matrix'),

@@ -330,7 +330,7 @@ export type ColumnMeasure =
   | 'resolution'
   | 'slopeBias'
   | 'drift';
-export type BinMeasure = 'feedIn' | 'folded' | 'matrixVariance' | 'dataVariance';
+export type BinMeasure = 'feedIn' | 'folded' | 'matrixVariance' | 'dataVariance' | 'background';
 
 /** As `audit.json` and `flags.json`. */
 export interface AuditView {

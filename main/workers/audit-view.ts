@@ -18,7 +18,7 @@ const COLUMN_MEASURES: readonly ColumnMeasure[] = [
   'slopeBias',
   'drift',
 ];
-const BIN_MEASURES: readonly BinMeasure[] = ['feedIn', 'folded', 'matrixVariance', 'dataVariance'];
+const BIN_MEASURES: readonly BinMeasure[] = ['feedIn', 'folded', 'matrixVariance', 'dataVariance', 'background'];
 const UNKNOWN: Measure = { value: null, reason: 'not measured' };
 
 /** The audit as the window shows it, lists as typed arrays; `seconds` is left to the caller. */

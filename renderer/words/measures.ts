@@ -144,4 +144,11 @@ export const BIN_MEASURES: Record<BinMeasure, MeasureWords> = {
     limit: null,
     beyond: 'above',
   },
+  background: {
+    title: 'Background',
+    unit: () => 'events',
+    means: 'Content of the bin from rows without a true value, apart from every column.',
+    limit: null,
+    beyond: 'above',
+  },
 };

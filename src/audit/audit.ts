@@ -1,5 +1,6 @@
 import { auditAcceptance } from './acceptance';
 import type { AuditInput } from './audit-input';
+import { auditBackground } from './background';
 import { auditBias } from './bias';
 import { deepAudit, type AuditSources, type DeepAudit } from './deep-audit';
 import { auditDuplicate } from './duplicate';
@@ -40,6 +41,7 @@ const PARTS: ((input: AuditInput) => Findings)[] = [
   auditSingleEvent,
   auditNegativeWeight,
   auditDuplicate,
+  auditBackground,
 ];
 
 /**

@@ -15,7 +15,7 @@ export type ColumnMeasure =
   | 'resolution'
   | 'slopeBias'
   | 'drift';
-export type BinMeasure = 'feedIn' | 'folded' | 'matrixVariance' | 'dataVariance';
+export type BinMeasure = 'feedIn' | 'folded' | 'matrixVariance' | 'dataVariance' | 'background';
 export type MatrixMeasure = 'singularValues' | 'resolvable';
 
 /** What one part of the audit found: its measures and the flags that rest on them. */
