@@ -2,12 +2,12 @@ import { binRange } from '../study/axis';
 import { outcomePlaces, type AuditInput } from './audit-input';
 import { intervalOfDraws } from './draws';
 import { answer, type Flag, type FlagState } from './flag';
+import { growthAdvice } from './growth-advice';
 import { cellMoments, fold, whyNotFolded } from './folding';
 import type { MatrixWatcher } from './matrix-draws';
 import { listMeasure, type Measure, type Reading } from './measure';
 import type { ReferenceSpectrum } from './reference';
-import { growthToSettle } from './settling';
-import { formatEvents, formatNumber, formatShare } from './wording';
+import { formatShare } from './wording';
 
 export interface FeedIn {
   /** Share of each reconstructed bin's expected content that was generated outside the true window. */
@@ -91,11 +91,8 @@ function feedInOf(input: AuditInput, values: Float64Array, draws: Float64Array[]
 function adviceOf(input: AuditInput, state: FlagState, value: number, sd: number, limit: number): string {
   if (state === 'clear') return '';
   if (state === 'flagged') return 'widen the true axis, or leave this reconstructed bin out of the unfolding';
-  const growth = growthToSettle(value, sd, limit, input.study.credibility);
-  if (growth === null)
-    return `${formatNumber(value)} is too close to the limit for any feasible number of events to settle it`;
-  const events = input.tally.cells.events.reduce((a, b) => a + b, 0);
-  return `about ${formatNumber(growth, 2)} times the calibration events (${formatEvents((growth - 1) * events)} more, spread as now) would settle it`;
+  const counted = input.tally.cells.events.reduce((a, b) => a + b, 0);
+  return growthAdvice(input, { value, sd, limit, counted });
 }
 
 function spreadOf(draws: Float64Array): number {

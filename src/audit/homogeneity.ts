@@ -168,7 +168,7 @@ function sequentialTest(
     drawAlike(table, margins, conditionals, stream, drawn.contents);
     const { likelihood, distance } = statisticOf(drawn);
     distances += distance;
-    if (likelihood >= observed * (1 - TIE)) above++;
+    if (reaches(likelihood, observed)) above++;
     if (above === exceedances) return { pValue: above / draws, draws, expectedDistance: distances / draws };
   }
   return { pValue: (above + 1) / (most + 1), draws: most, expectedDistance: distances / most };
@@ -189,6 +189,11 @@ function drawAlike(
     else
       for (let k = 0; k < outcomes; k++) row[k] = scale[k]! * stream.poisson((rows[g]! * pool[k]!) / all / scale[k]!);
   }
+}
+
+/** Whether a statistic is at or above the observed one, equal up to rounding included. */
+export function reaches(statistic: number, observed: number): boolean {
+  return statistic >= observed * (1 - TIE);
 }
 
 /**
