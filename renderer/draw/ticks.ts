@@ -7,6 +7,8 @@ export interface Tick {
   text: string;
 }
 
+/** A scale is read from two places at least; three, where there is room for three. */
+const FEWEST = 3;
 const DECADE_DIGITS = [2, 3, 4, 5, 6, 7, 8, 9];
 /** Fewer decades than this carry labels between the powers of ten too. */
 const FEW_DECADES = 1.5;
@@ -19,7 +21,10 @@ export function ticksOf(kind: 'linear' | 'log', from: number, to: number, room: 
 }
 
 function linearTicks(from: number, to: number, most: number): Tick[] {
-  const values = scaleLinear([from, to], [0, 1]).ticks(most);
+  const scale = scaleLinear([from, to], [0, 1]);
+  let values = scale.ticks(most);
+  // A range just short of its round numbers would be left with one tick: a step finer still has room.
+  for (let n = most + 1; values.length < FEWEST && n <= 2 * most; n++) values = scale.ticks(n);
   return values.map((v) => ({ value: v, text: tickText(v) }));
 }
 
@@ -81,5 +86,6 @@ export function domainOf(values: Iterable<number>, options: { zero: boolean; log
   const low = options.zero ? Math.min(0, least) : least;
   const high = options.zero ? Math.max(0, greatest) : greatest;
   const air = (high - low) * 0.05 || Math.abs(high) * 0.05 || 1;
+  if (low === 0 && high === 0) return [0, 1];
   return [low === 0 ? 0 : low - air, high === 0 ? 0 : high + air];
 }
