@@ -51,7 +51,7 @@ function doubtOfOneColumn(header: Uint8Array, lines: readonly Uint8Array[]): str
 const COLON = 58;
 
 function doubtOfLines(header: { delimiter: number; fields: number }, lines: readonly Uint8Array[]): string | null {
-  const other = CANDIDATES.find((d) => d !== header.delimiter && usual(lines, d) > 1);
+  const other = CANDIDATES.find((d) => d !== header.delimiter && usual(lines, d) === header.fields);
   if (other === undefined) return null;
   return `the header is separated by ${nameOf(header.delimiter)}, the lines by ${nameOf(other)}`;
 }

@@ -9,8 +9,14 @@ const TAB = 9;
  * in place: the line's bytes change. A quote elsewhere in a field is a plain character.
  */
 export class Fields {
-  starts = new Int32Array(64);
-  ends = new Int32Array(64);
+  starts: Int32Array;
+  ends: Int32Array;
+
+  /** With room for `least` fields; more are made room for as they come. */
+  constructor(least = 64) {
+    this.starts = new Int32Array(least);
+    this.ends = new Int32Array(least);
+  }
 
   /**
    * Cuts `bytes[from, to)`, a line without its end; the number of fields, at least 1. Where a quoted field is not
@@ -56,8 +62,8 @@ export class Fields {
 
   private grow(): void {
     const { starts, ends } = this;
-    this.starts = new Int32Array(starts.length * 2);
-    this.ends = new Int32Array(ends.length * 2);
+    this.starts = new Int32Array(starts.length * 2 + 1);
+    this.ends = new Int32Array(ends.length * 2 + 1);
     this.starts.set(starts);
     this.ends.set(ends);
   }

@@ -17,6 +17,7 @@ export interface Layout {
   positions: number[];
 }
 
+const TAB = 9;
 const LINE_FEED = 10;
 const RETURN = 13;
 const SPACE = 32;
@@ -37,8 +38,14 @@ export class RowParser {
   private readonly needsOf: number[][];
   /** 1 for a field that held a number too long for the quickest way. */
   private readonly long: Uint8Array;
+  /** 1 for each byte at which a plain field ends or is no longer plain, and for each that is set aside around one. */
   private readonly stops = new Uint8Array(256);
-  private readonly fields = new Fields();
+  private readonly blanks = new Uint8Array(256);
+  private readonly fields: Fields;
+  /** Fields of any need; those of them that are not just one number; those of these that are a number too. */
+  private readonly needed: number[];
+  private readonly others: number[];
+  private readonly mixed: number[];
 
   /** The first `linesToSkip` lines are passed over. */
   constructor(
@@ -53,7 +60,12 @@ export class RowParser {
       if (list.length === 0) return SKIPPED;
       return list.length === 1 && needs[list[0]].as === 'number' ? NUMBER : OTHER;
     });
+    this.needed = header.flatMap((_, field) => (this.needsOf[field].length > 0 ? [field] : []));
+    this.others = this.needed.filter((field) => this.kinds[field] === OTHER);
+    this.mixed = this.others.filter((field) => this.needsOf[field].some((i) => needs[i].as === 'number'));
+    this.fields = new Fields(header.length);
     this.long = new Uint8Array(header.length);
+    for (const blank of [SPACE, TAB]) this.blanks[blank] = blank === delimiter ? 0 : 1;
     for (const stop of [delimiter, LINE_FEED, RETURN, QUOTE]) this.stops[stop] = 1;
   }
 
@@ -78,9 +90,10 @@ export class RowParser {
    * at a line feed at the latest, which stands at `to - 1`.
    */
   private quickly(bytes: Uint8Array, from: number, to: number): number {
-    const { kinds, needsOf, stops, long, builder } = this;
+    const { kinds, needsOf, stops, blanks, long, builder } = this;
     const { numbers, places, capacity } = builder;
     const { delimiter } = this.layout;
+    const { starts, ends } = this.fields;
     const last = kinds.length - 1;
     let { rows } = builder;
     let { place } = this;
@@ -89,9 +102,10 @@ export class RowParser {
       let p = line;
       for (let field = 0; ; field++) {
         if (kinds[field] === SKIPPED) {
-          while (stops[bytes[p]] === 0) p++;
+          if (bytes[p] === QUOTE) p = behindQuoted(bytes, p);
+          else while (stops[bytes[p]] === 0) p++;
         } else if (kinds[field] === NUMBER) {
-          while (bytes[p] === SPACE) p++;
+          while (blanks[bytes[p]] !== 0) p++;
           const begin = p;
           const into = numbers[needsOf[field][0]];
           if (long[field] === 0) p = readShort(bytes, begin, into, rows);
@@ -108,10 +122,11 @@ export class RowParser {
             into[rows] = value;
           }
         } else {
-          while (bytes[p] === SPACE) p++;
-          const begin = p;
-          while (stops[bytes[p]] === 0) p++;
-          if (!this.fill(needsOf[field], bytes, begin, trimmedEnd(bytes, begin, p), rows)) break lines;
+          while (blanks[bytes[p]] !== 0) p++;
+          starts[field] = p;
+          if (bytes[p] === QUOTE) p = behindQuoted(bytes, p);
+          else while (stops[bytes[p]] === 0) p++;
+          ends[field] = p;
         }
         if (field === last) break;
         if (bytes[p] !== delimiter) break lines;
@@ -121,7 +136,7 @@ export class RowParser {
       if (last === 0 && bytes[p - 1] <= SPACE) break;
       if (p - line > LONGEST_LINE) break;
       if (bytes[p] === RETURN) p++;
-      if (bytes[p] !== LINE_FEED) break;
+      if (bytes[p] !== LINE_FEED || !this.fillOthers(bytes, rows)) break;
       line = p + 1;
       places[rows++] = ++place;
     }
@@ -130,20 +145,39 @@ export class RowParser {
     return line;
   }
 
-  /** Writes one field for each of its needs; false where a number was wanted and there is none. */
-  private fill(needs: number[], bytes: Uint8Array, from: number, to: number, row: number): boolean {
-    const { numbers, codes, high, low, dictionaries } = this.builder;
-    for (const i of needs) {
+  /** Writes the fields left to the end of a quick line; false where a number was wanted and there is none. */
+  private fillOthers(bytes: Uint8Array, row: number): boolean {
+    const { starts, ends } = this.fields;
+    const { others, mixed } = this;
+    for (let i = 0; i < others.length; i++) unquote(bytes, others[i], starts, ends);
+    for (let i = 0; i < mixed.length; i++) if (!this.fillNumbers(bytes, mixed[i], row)) return false;
+    for (let i = 0; i < others.length; i++) this.fillTexts(bytes, others[i], row);
+    return true;
+  }
+
+  /** Writes a field for each need of a number; false where it is none. */
+  private fillNumbers(bytes: Uint8Array, field: number, row: number): boolean {
+    const from = this.fields.starts[field];
+    const to = this.fields.ends[field];
+    for (const i of this.needsOf[field]) {
+      if (this.needs[i].as !== 'number') continue;
+      const value = parseNumber(bytes, from, to);
+      if (value !== value && !isMissing(bytes, from, to)) return false;
+      this.builder.numbers[i][row] = value;
+    }
+    return true;
+  }
+
+  /** Writes a field for each need of a label or identity: last, for a label once met stays. */
+  private fillTexts(bytes: Uint8Array, field: number, row: number): void {
+    const { codes, high, low, dictionaries } = this.builder;
+    const from = this.fields.starts[field];
+    const to = this.fields.ends[field];
+    for (const i of this.needsOf[field]) {
       const { as } = this.needs[i];
       if (as === 'text') codes[i][row] = dictionaries[i].code(bytes, from, to);
       else if (as === 'identity') identify(bytes, from, to, high[i], low[i], row);
-      else {
-        const value = parseNumber(bytes, from, to);
-        if (value !== value && !isMissing(bytes, from, to)) return false;
-        numbers[i][row] = value;
-      }
     }
-    return true;
   }
 
   /** Parses the one line that begins at `from`: a row, a reject, or nothing where it is blank. Where the next begins. */
@@ -169,17 +203,37 @@ export class RowParser {
   }
 
   private finishRow(bytes: Uint8Array, place: number): void {
-    const { fields, builder, needsOf } = this;
-    for (let field = 0; field < needsOf.length; field++) {
-      const from = fields.starts[field];
-      const to = fields.ends[field];
-      if (needsOf[field].length > 0 && !this.fill(needsOf[field], bytes, from, to, builder.rows)) {
-        builder.reject(place, this.layout.header[field], excerpt(bytes, from, to), 'not a number');
+    const { fields, builder, needed } = this;
+    for (const field of needed) {
+      if (!this.fillNumbers(bytes, field, builder.rows)) {
+        const value = excerpt(bytes, fields.starts[field], fields.ends[field]);
+        builder.reject(place, this.layout.header[field], value, 'not a number');
         return;
       }
     }
+    for (const field of needed) this.fillTexts(bytes, field, builder.rows);
     builder.places[builder.rows++] = place;
   }
+}
+
+/**
+ * The place behind the quoted field that opens at `open`; `open` itself where a doubled quote or the line's end comes
+ * first: no field ends there, so that the line is left to the careful way.
+ */
+function behindQuoted(bytes: Uint8Array, open: number): number {
+  let p = open + 1;
+  while (bytes[p] !== QUOTE && bytes[p] !== LINE_FEED) p++;
+  return bytes[p] === QUOTE && bytes[p + 1] !== QUOTE ? p + 1 : open;
+}
+
+/** Sets aside the quotes around a field, and the blanks at its ends. */
+function unquote(bytes: Uint8Array, field: number, starts: Int32Array, ends: Int32Array): void {
+  const quoted = bytes[starts[field]] === QUOTE && ends[field] > starts[field];
+  let from = quoted ? starts[field] + 1 : starts[field];
+  const to = trimmedEnd(bytes, from, quoted ? ends[field] - 1 : ends[field]);
+  while (from < to && (bytes[from] === SPACE || bytes[from] === TAB)) from++;
+  starts[field] = from;
+  ends[field] = to;
 }
 
 function isBlank(fields: Fields, found: number): boolean {

@@ -191,6 +191,56 @@ describe('labels', () => {
   });
 });
 
+describe('a line', () => {
+  test('is read alike whether it looks plain or not: a doubled quote at its end changes nothing before it', async () => {
+    const field = fc.oneof(
+      fc.constantFrom(
+        '',
+        '1',
+        '-2.5',
+        ' 3',
+        '4 ',
+        '\t5\t',
+        '"6"',
+        '" 7 "',
+        '"a,b"',
+        'a b',
+        '1e5',
+        '+7',
+        'nan',
+        '""',
+        'x',
+        '0x1',
+        '12345678901',
+      ),
+      fc.double().map(String),
+      fc.integer().map((n) => `"${n}"`),
+    );
+    const lines = fc.array(fc.array(field, { minLength: 2, maxLength: 4 }), { minLength: 1, maxLength: 8 });
+    const columns = ['t', 't:text', 'r', 'id:text', 'id:identity'];
+    await fc.assert(
+      fc.asyncProperty(lines, async (rows) => {
+        const plain = await read(['t,r,id', '1,1,1', ...rows.map((each) => each.join(','))].join('\n'), ...columns);
+        const odd = await read(
+          ['t,r,id,z', '1,1,1,z', ...rows.map((each) => `${each.join(',')},"q""q"`)].join('\n'),
+          ...columns,
+        );
+        const rejects = (all: Gathered) => all.rejects.map(({ place, column, reason }) => [place, column, reason]);
+        expect(odd.rows).toEqual(plain.rows);
+        expect(rejects(odd)).toEqual(rejects(plain));
+      }),
+      { numRuns: 500, seed: 7 },
+    );
+  });
+
+  test('that is rejected leaves no label behind', async () => {
+    const text = 't,run\n1,a\nx,b\n2,c,d\n3,"e\n4,f\n';
+    const needs = needsOf('run:text', 't');
+    const [unit] = await csv.plan(fileOf(text), 'events', needs, 1);
+    for await (const { columns } of csv.read(unit, needs)) expect(columns[0]).toMatchObject({ labels: ['a', 'f'] });
+  });
+});
+
 /** Lines of every sort, good and bad, and how they end. */
 const line = fc.oneof(
   { weight: 6, arbitrary: fc.tuple(fc.integer(), fc.double(), fc.constantFrom('a', 'b', 'é')).map((v) => v.join(',')) },
