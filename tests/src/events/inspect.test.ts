@@ -18,7 +18,16 @@ describe('inspecting a delimited table', () => {
       columns: [
         { name: 't', type: 'number', missing: 0, malformed: 0, nonFinite: 0, least: -4.5, greatest: 7, labels: null },
         { name: 'r', type: 'number', missing: 3, malformed: 0, nonFinite: 0, least: 2, greatest: 2, labels: null },
-        { name: 'run', type: 'text', missing: 1, malformed: 0, nonFinite: 0, least: null, greatest: null, labels: ['a', 'b'] },
+        {
+          name: 'run',
+          type: 'text',
+          missing: 1,
+          malformed: 0,
+          nonFinite: 0,
+          least: null,
+          greatest: null,
+          labels: ['a', 'b'],
+        },
         { name: 'w', type: 'number', missing: 1, malformed: 0, nonFinite: 2, least: 1, greatest: 1, labels: null },
       ],
     });
