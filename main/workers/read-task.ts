@@ -179,7 +179,7 @@ class Reading {
 
 /** Names a place of a unit. A unit that starts inside its file knows not its first line: the lines before are counted. */
 function placeInUnit(unit: Unit, places: 'line' | 'row', place: number): string {
-  if (places === 'row') return `${unit.name}: row ${place}`;
+  if (places === 'row') return `${unit.name}: row ${place + (unit.rowsBefore ?? 0)}`;
   return `${unit.name}:${place + linesBefore(unit.path, unit.start)}`;
 }
 

@@ -10,7 +10,7 @@ const LONGEST_VALUE = 80;
 /**
  * Gathers the rows of one unit into batches. A reader writes the values of row `rows` into `numbers`, `codes`, or `high`
  * and `low` at the index of the need, sets its place, and then adds one to `rows`: a row half written and given up costs
- * nothing. The arrays of a batch are its receiver's to keep.
+ * nothing. The arrays of a batch are used again for the next one.
  */
 export class BatchBuilder {
   rows = 0;
@@ -30,7 +30,7 @@ export class BatchBuilder {
     readonly capacity = BATCH_ROWS,
   ) {
     this.dictionaries = needs.map(({ column }) => new Dictionary(file, column));
-    this.renew();
+    this.allocate();
   }
 
   /** True where no further row or reject has room. */
@@ -63,7 +63,8 @@ export class BatchBuilder {
     const { rows, rejects } = this;
     const columns = this.needs.map((need, i) => this.column(need, i, rows));
     const batch = { rows, places: this.places.subarray(0, rows), columns, rejects, bytes, placesPassed };
-    this.renew();
+    this.rows = 0;
+    this.rejects = [];
     return batch;
   }
 
@@ -73,10 +74,8 @@ export class BatchBuilder {
     return { as, high: this.high[i].subarray(0, rows), low: this.low[i].subarray(0, rows) };
   }
 
-  private renew(): void {
+  private allocate(): void {
     const lengthFor = (i: number, as: Need['as']) => (this.needs[i].as === as ? this.capacity : 0);
-    this.rows = 0;
-    this.rejects = [];
     this.places = new Float64Array(this.capacity);
     this.numbers = this.needs.map((_, i) => new Float64Array(lengthFor(i, 'number')));
     this.codes = this.needs.map((_, i) => new Int32Array(lengthFor(i, 'text')));

@@ -42,6 +42,7 @@ export interface Reject {
   reason: string;
 }
 
+/** Its arrays may be used again once the next batch is asked for: whoever keeps values copies them. */
 export interface Batch {
   rows: number;
   /** Physical line (or row number) of each row, counted from 1 at the start of the unit. */
@@ -64,6 +65,8 @@ export interface Unit {
   /** `[start, end)` in bytes for a format that can be split, else the whole file. */
   start: number;
   end: number;
+  /** Rows of the file before the unit, where places are row numbers and the file is split; 0 where absent. */
+  rowsBefore?: number;
   /** Facts a reader found when it planned the file (delimiter, positions of columns, ...): plain data. */
   detail: unknown;
 }

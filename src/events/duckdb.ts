@@ -1,9 +1,9 @@
 import { tmpdir } from 'node:os';
-import type { DuckDBConnection, DuckDBDataChunk, DuckDBResult } from '@duckdb/node-api';
+import type { DuckDBConnection, DuckDBDataChunk, DuckDBResult, DuckDBValue } from '@duckdb/node-api';
 import { Cancelled, InputError } from '../study/input-error';
 
-/** Threads of one reading: DuckDB decodes beside the thread that takes the values. */
-const THREADS = '2';
+/** Threads of one reading: DuckDB decodes beside the thread that takes the values, and files are split over workers. */
+const THREADS = '1';
 /** What DuckDB may hold, a few row groups: its own limit would be a share of the whole machine. */
 const MEMORY = '400MB';
 
@@ -19,6 +19,14 @@ export interface TypedColumn {
   name: string;
   /** The SQL name of its type, such as `BIGINT` or `DECIMAL(18,3)`. */
   type: string;
+}
+
+/** What is asked of a file: SQL expressions over its columns, for a range of its rows. */
+export interface Query {
+  expressions: string[];
+  columns: number;
+  from: number;
+  to: number;
 }
 
 /** A chunk of a result, of which only the first `rows` rows are rows of the file. */
@@ -84,17 +92,18 @@ export class OneFile {
   }
 
   /**
-   * Every row of the file, in order: `expressions` over its columns `c0`, `c1`, ... (`columns` of them), in chunks. The
+   * Rows `[from, to)` of the file, in order: `expressions` over its columns `c0`, `c1`, ..., in chunks. The last of the
+   * `columns` columns is the row number, counted from 0: DuckDB passes over row groups outside the range. The
    * stream of a DuckDB result ends quietly where the reading fails (see `UNION ALL` below): a stream that does not end
    * with the row that stands only there throws `InputError` with DuckDB's message.
    */
-  async *rows(expressions: string[], columns: number, signal?: AbortSignal): AsyncGenerator<Rows> {
+  async *rows(query: Query, signal?: AbortSignal): AsyncGenerator<Rows> {
     const interrupt = (): void => this.connection.interrupt();
     signal?.addEventListener('abort', interrupt);
     let passed = 0;
     try {
-      const result = await this.start(expressions, columns);
-      const last = expressions.length;
+      const result = await this.start(query);
+      const last = query.expressions.length;
       // The next chunk is asked for before this one is worked on: DuckDB decodes meanwhile.
       for (let next = result.fetchChunk(); ;) {
         const chunk = await next;
@@ -107,7 +116,7 @@ export class OneFile {
         yield { chunk, rows };
         if (ends) return;
       }
-      throw await this.reasonOf(expressions, columns, passed);
+      throw await this.reasonOf(query, passed);
     } catch (cause) {
       if (signal?.aborted) throw new Cancelled();
       throw cause instanceof InputError || cause instanceof Cancelled ? cause : this.fault(passed, cause);
@@ -116,22 +125,29 @@ export class OneFile {
     }
   }
 
-  private start(expressions: string[], columns: number): Promise<DuckDBResult> {
+  private start(query: Query): Promise<DuckDBResult> {
+    const { expressions } = query;
     const ending = expressions.map(() => 'NULL').join(', ');
-    const sql = `SELECT ${[...expressions, '0::TINYINT'].join(', ')} FROM ${this.from(columns)}
+    const sql = `SELECT ${[...expressions, '0::TINYINT'].join(', ')} FROM ${this.from(query)}
       UNION ALL SELECT ${ending === '' ? '' : `${ending}, `}1::TINYINT`;
-    return this.connection.stream(sql, [this.path]);
+    return this.connection.stream(sql, this.bound(query));
   }
 
-  private from(columns: number): string {
-    return `${this.table} AS t(${Array.from({ length: columns }, (_, i) => `c${i}`).join(', ')})`;
+  private from({ columns }: Query): string {
+    const names = Array.from({ length: columns }, (_, i) => `c${i}`);
+    return `${this.table} AS t(${names.join(', ')}) WHERE ${names.at(-1)} >= $2 AND ${names.at(-1)} < $3`;
+  }
+
+  private bound({ from, to }: Query): DuckDBValue[] {
+    return [this.path, BigInt(from), BigInt(to)];
   }
 
   /** Why a stream broke off: the same values asked for once more as an aggregate, which does tell. */
-  private async reasonOf(expressions: string[], columns: number, passed: number): Promise<InputError> {
-    const counts = expressions.map((expression) => `count(${expression})`);
+  private async reasonOf(query: Query, passed: number): Promise<InputError> {
+    const counts = query.expressions.map((expression) => `count(${expression})`);
     try {
-      await this.connection.run(`SELECT ${[...counts, 'count(*)'].join(', ')} FROM ${this.from(columns)}`, [this.path]);
+      const sql = `SELECT ${[...counts, 'count(*)'].join(', ')} FROM ${this.from(query)}`;
+      await this.connection.run(sql, this.bound(query));
     } catch (cause) {
       return this.fault(passed, cause);
     }

@@ -52,7 +52,15 @@ export const hdf5: Reader = {
     const share = (row: number): number => Math.round(rows === 0 ? 0 : (row / rows) * bytes);
     return rowRanges(rows, pieces, step, LEAST_ROWS).map(({ from, to }) => {
       const detail: Detail = { columns, from, to, step };
-      return { path, name, format: 'hdf5', start: share(from), end: to === rows ? bytes : share(to), detail };
+      return {
+        path,
+        name,
+        format: 'hdf5',
+        start: share(from),
+        end: to === rows ? bytes : share(to),
+        rowsBefore: from,
+        detail,
+      };
     });
   },
 

@@ -34,7 +34,7 @@ export const npy: Reader = {
     const byte = (row: number): number => start + row * stride;
     return rowRanges(rows, pieces, 1, LEAST_ROWS).map(({ from, to }) => {
       const detail: Detail = { columns, header: { ...header, columns: [] }, from, to };
-      return { path, name, format: 'npy', start: from === 0 ? 0 : byte(from), end: byte(to), detail };
+      return { path, name, format: 'npy', start: from === 0 ? 0 : byte(from), end: byte(to), rowsBefore: from, detail };
     });
   },
 
