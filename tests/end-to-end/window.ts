@@ -16,6 +16,9 @@ const FLAGS = [
   '--disable-sync',
 ];
 
+/** What takes longer than this has failed: a test should say so soon. */
+const PATIENCE_MS = 15_000;
+
 /** The built program, served over the loopback and opened in a real browser. */
 export interface OpenWindow {
   page: Page;
@@ -47,7 +50,9 @@ export async function openWindow(options: WindowOptions): Promise<OpenWindow> {
     const url = await addressOf(server);
     browser = await chromium.launch({ executablePath: CHROMIUM, args: FLAGS });
     const { width = 1280, height = 800, dark = false } = options;
-    const page = await browser.newPage({ viewport: { width, height }, colorScheme: dark ? 'dark' : 'light' });
+    const context = await browser.newContext({ viewport: { width, height }, colorScheme: dark ? 'dark' : 'light' });
+    const page = await context.newPage();
+    page.setDefaultTimeout(PATIENCE_MS);
     const faults: string[] = [];
     page.on('console', (message) => {
       if (message.type() === 'error') faults.push(message.text());

@@ -121,6 +121,7 @@ vi.mock('electron', async () => {
         try {
           return cloned(await electron.handlers.get(channel)!(event as never, ...(cloned(args) as never[])));
         } catch (error) {
+          // eslint-disable-next-line preserve-caught-error -- its class and cause are what does not cross
           throw new Error(`Error invoking remote method '${channel}': ${String(error)}`);
         }
       },
