@@ -78,8 +78,12 @@ export class Pool<C extends Calls> {
     return Promise.all(this.workers.map((_, w) => this.call(w, name, argument)));
   }
 
-  /** Hands `items` to whichever worker is free, in order. Stops handing out at the first fault. */
-  async share<T>(items: readonly T[], work: (item: T, index: number, w: number) => Promise<void>): Promise<void> {
+  /** Hands `items` to whichever worker is free, `atOnce` to each, in order. Stops handing out at the first fault. */
+  async share<T>(
+    items: readonly T[],
+    work: (item: T, index: number, w: number) => Promise<void>,
+    atOnce = 1,
+  ): Promise<void> {
     let next = 0;
     let failed = false;
     const lane = async (w: number): Promise<void> => {
@@ -93,7 +97,8 @@ export class Pool<C extends Calls> {
         }
       }
     };
-    const ends = await Promise.allSettled(this.workers.map((_, w) => lane(w)));
+    const lanes = Array.from({ length: atOnce }, () => this.workers.map((_, w) => lane(w)));
+    const ends = await Promise.allSettled(lanes.flat());
     const fault = ends.find((end) => end.status === 'rejected');
     if (fault) throw fault.reason;
   }

@@ -164,22 +164,28 @@ async function readUnits(options: ReadOptions, files: NamedFile[], units: Unit[]
   const hashes = new Map<string, string>();
   const total = files.reduce((sum, { path }) => sum + statSync(path).size, 0);
   const progress: Progress = { stage: 'reading', done: 0, total, unit: 'bytes', rows: 0 };
+  // Hashes first: at the end one would keep a single worker busy.
   const steps: Step[] = [
-    ...units.map((unit, ordinal) => ({ unit, ordinal })),
     ...[...new Set(files.map(({ path }) => path))].map((path) => ({ hash: path })),
+    ...units.map((unit, ordinal) => ({ unit, ordinal })),
   ];
-  await pool.share(steps, async (step, _, w) => {
-    if ('hash' in step) {
-      hashes.set(step.hash, await pool.call(w, 'hash', { path: step.hash }));
-      return;
-    }
-    done[step.ordinal] = await pool.call(w, 'unit', step, (note) => {
-      const { bytes, rows } = note as { bytes: number; rows: number };
-      progress.done = Math.min(total, progress.done + bytes);
-      progress.rows! += rows;
-      options.onProgress?.({ ...progress });
-    });
-  });
+  const atOnce = Math.max(1, ...units.map(({ format }) => readerOfFormat(format).atOnce ?? 1));
+  await pool.share(
+    steps,
+    async (step, _, w) => {
+      if ('hash' in step) {
+        hashes.set(step.hash, await pool.call(w, 'hash', { path: step.hash }));
+        return;
+      }
+      done[step.ordinal] = await pool.call(w, 'unit', step, (note) => {
+        const { bytes, rows } = note as { bytes: number; rows: number };
+        progress.done = Math.min(total, progress.done + bytes);
+        progress.rows! += rows;
+        options.onProgress?.({ ...progress });
+      });
+    },
+    atOnce,
+  );
   return { done, hashes };
 }
 

@@ -104,6 +104,8 @@ export interface Reader {
   format: string;
   /** `'line'` where places are physical lines, `'row'` elsewhere. */
   places: 'line' | 'row';
+  /** Units that one worker reads at once, where a reading is largely waiting; 1 where absent. */
+  atOnce?: number;
   /** The columns of the file, cheaply. Throws `InputError` where the file cannot be of this format. */
   columns(path: string): Promise<{ name: string; type: 'number' | 'text' | 'unknown' }[]>;
   /** Cuts a file into at most about `pieces` units. Throws `InputError` where a needed column is absent. */

@@ -4,6 +4,9 @@ import { Cancelled, InputError } from '../study/input-error';
 
 /** Threads of one reading: DuckDB decodes beside the thread that takes the values, and files are split over workers. */
 const THREADS = '1';
+/** Rows of a full chunk (DuckDB's vector size). The ending row comes in a chunk of its own; were it ever not so, the count
+ * of rows would be wrong and the reading refused. */
+const FULL_CHUNK = 2048;
 /** What DuckDB may hold, a few row groups: its own limit would be a share of the whole machine. */
 const MEMORY = '400MB';
 
@@ -109,7 +112,8 @@ export class OneFile {
         const chunk = await next;
         if (signal?.aborted) throw new Cancelled();
         if (chunk === null || chunk.rowCount === 0) break;
-        const ends = chunk.getColumnVector(last).getItem(chunk.rowCount - 1) === 1;
+        // A full chunk is never the one with the ending row: to look into each of them would cost a third of the reading.
+        const ends = chunk.rowCount < FULL_CHUNK && chunk.getColumnVector(last).getItem(chunk.rowCount - 1) === 1;
         if (!ends) next = result.fetchChunk();
         const rows = chunk.rowCount - (ends ? 1 : 0);
         passed += rows;

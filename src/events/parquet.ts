@@ -31,6 +31,7 @@ interface Detail {
 export const parquet: Reader = {
   format: 'parquet',
   places: 'row',
+  atOnce: 2,
 
   async columns(path) {
     const columns = await withFile(path, path, (file) => file.columns());
