@@ -528,6 +528,8 @@ export interface ComparisonView {
   /** `[columns]`. */
   distance: Float64Array;
   pValue: Float64Array;
+  /** `[columns]` p-value after Benjamini-Hochberg; NaN, as above, where a column cannot be compared. */
+  adjusted?: Float64Array;
   /** Columns that differ after Benjamini-Hochberg at 0.05. */
   differing: number[];
   /** `[bins]` folded reference spectrum with each matrix. */

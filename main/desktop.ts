@@ -16,6 +16,7 @@ import { keepsakesFolder } from './keepsakes';
 import { denyPermissions, isOwnPage, lockPage } from './locked-page';
 import { nativeDialog } from './native-dialog';
 import { PAGE, PRIVILEGES, servePage } from './page-scheme';
+import { printInWindow } from './print-window';
 import { Session } from './session';
 import { windowFilesBeside } from './window-files';
 import { windowMenu } from './window-menu';
@@ -120,6 +121,7 @@ function openWindow(): void {
       dialog: (argument) => nativeDialog(dialog, window, argument),
       reveal: (path) => shell.showItemInFolder(path),
       setTitle: (title, edited) => setTitle(window, title, edited),
+      print: printInWindow,
     },
   });
   wanted = null;

@@ -131,7 +131,7 @@ function handlersOf(desk: Desk, keepBudget: number): Handlers<CallName> {
     ...matrixCalls(desk),
     ...auditCalls(desk),
     ...handOverCalls(desk),
-  } as unknown as Handlers<CallName>;
+  };
 }
 
 function startFacts(desk: Desk, keepBudget: number): StartFacts {

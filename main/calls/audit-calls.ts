@@ -4,7 +4,7 @@ import type { Progress } from '../progress';
 import type { Desk, Handlers } from './handlers';
 import { atTally } from './matrix-calls';
 
-type AuditCall = 'influence' | 'plan' | 'priorSensitivity' | 'rehearse' | 'replicasNeeded';
+type AuditCall = 'influence' | 'plan' | 'priorSensitivity' | 'rehearse' | 'compare' | 'replicasNeeded';
 
 /** The deeper audit: what a reviewer asks of a matrix. */
 export function auditCalls(desk: Desk): Handlers<AuditCall> {
@@ -27,6 +27,12 @@ export function auditCalls(desk: Desk): Handlers<AuditCall> {
       desk.jobs.run(job, async (running) => {
         const { tally, argument } = await at(study, folder);
         return desk.matrix.ask(tally, 'rehearse', { ...argument, repetitions }, steps(running, 'rehearsing'));
+      }),
+    compare: ({ study, folder, bundle, job }) =>
+      desk.jobs.run(job, async ({ signal }) => {
+        const path = desk.chosen.mayReadBundle(bundle);
+        const { tally, argument } = await at(study, folder);
+        return desk.matrix.ask(tally, 'compare', { ...argument, bundle: path }, { signal });
       }),
     replicasNeeded: ({ study, folder, digits, job }) =>
       desk.jobs.run(job, async (running) => {

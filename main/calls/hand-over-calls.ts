@@ -2,15 +2,17 @@ import type { BundleWritten, Checked, Verification, WrittenFiles } from '../brid
 import { buildBundle } from '../build';
 import { convertBundle } from '../convert';
 import type { Job } from '../jobs';
+import { writeReport } from '../report';
 import { verifyBundle } from '../verify';
 import { studyFiles } from './event-calls';
 import type { Desk, Handlers } from './handlers';
 
 /** Writing the bundle, checking it, and handing it over in other formats. */
-export function handOverCalls(desk: Desk): Handlers<'build' | 'verify' | 'convert'> {
+export function handOverCalls(desk: Desk): Handlers<'build' | 'verify' | 'convert' | 'report'> {
   return {
     build: (argument) => desk.jobs.run(argument.job, (job) => build(desk, argument, job)),
     verify: ({ bundle, job }) => desk.jobs.run(job, (running) => verify(desk, bundle, running)),
+    report: (argument) => desk.jobs.run(argument.job, (job) => report(desk, argument, job)),
     convert: (argument) => desk.jobs.run(argument.job, (job) => convert(desk, argument, job)),
   };
 }
@@ -64,5 +66,16 @@ async function convert(desk: Desk, argument: Checked<'convert'>, job: Job): Prom
   const { signal, progress: onProgress } = job;
   const { replace } = argument;
   const files = await convertBundle({ bundle, to: argument.to, out, replicas, replace, signal, onProgress });
+  return { files, seconds: (desk.now() - began) / 1000 };
+}
+
+async function report(desk: Desk, argument: Checked<'report'>, job: Job): Promise<WrittenFiles> {
+  const began = desk.now();
+  const bundle = desk.chosen.mayReadBundle(argument.bundle);
+  const out = desk.chosen.mayWrite(argument.path, 'report', argument.replace);
+  const { pdf, replace } = argument;
+  const print = desk.desktop?.print;
+  const { signal, progress: onProgress } = job;
+  const files = await writeReport({ bundle, out, pdf, replace, ...(print && { print }), signal, onProgress });
   return { files, seconds: (desk.now() - began) / 1000 };
 }

@@ -17,6 +17,8 @@ export interface Desktop {
   dialog(argument: Checked<'dialog'>): Promise<string[] | null>;
   reveal(path: string): void;
   setTitle(title: string, edited: boolean): void;
+  /** Prints an HTML file to a PDF file. */
+  print(html: string, pdf: string, signal?: AbortSignal): Promise<void>;
 }
 
 /** The built worker files; see `windowFilesBeside`. */

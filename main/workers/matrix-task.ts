@@ -1,6 +1,6 @@
 import { auditOf, type Audit } from '../../src/audit/audit';
 import type { AuditInput } from '../../src/audit/audit-input';
-import type { MatrixSampler } from '../../src/audit/matrix-draws';
+import { matrixSampler } from '../../src/handover/analyse';
 import { referenceOf, type ReferenceSpectrum } from '../../src/audit/reference';
 import { BLOCK, drawBlock, planEnsemble, type EnsemblePlan } from '../../src/ensemble/draw';
 import { posteriorOf } from '../../src/posterior/posterior';
@@ -15,6 +15,7 @@ import type {
   CellView,
   Checked,
   ColumnView,
+  ComparisonView,
   InfluenceView,
   PlanView,
   PosteriorView,
@@ -27,6 +28,7 @@ import { replicasNeeded } from '../replicas-needed';
 import { auditView } from './audit-view';
 import { cellView } from './cell-view';
 import { columnView } from './column-view';
+import { comparisonView } from './comparison-view';
 import { columnMeasures, type ColumnMeasures } from './column-measures';
 import { influenceView } from './influence-view';
 import { planView } from './plan-view';
@@ -57,6 +59,7 @@ export type MatrixCalls = {
   priorSensitivity: { argument: AtTally; result: PriorSensitivityView };
   /** Notes are `{ done, total }` repetitions. */
   rehearse: { argument: AtTally & { repetitions: number }; result: RehearsalView };
+  compare: { argument: AtTally & { bundle: string }; result: ComparisonView };
   /** Notes are `{ done, total }` blocks. */
   replicasNeeded: { argument: AtTally & { digits: number }; result: ReplicasNeeded };
 };
@@ -104,6 +107,7 @@ export function matrixTask(): Handlers<MatrixCalls> {
     plan: ({ target, ...at }) => timed(() => planView(audited(at), target)),
     priorSensitivity: (at) => timed(() => sensitivityView(analysed(at))),
     rehearse: ({ repetitions, ...at }, note) => timed(() => rehearsalView(audited(at), repetitions, note)),
+    compare: ({ bundle, ...at }) => timed(() => comparisonView(audited(at), bundle)),
     replicasNeeded: ({ digits, ...at }, note) =>
       timed(() => {
         const { credibility, ensemble } = at.study;
@@ -140,17 +144,11 @@ export interface Audited extends Audit {
   reference: ReferenceSpectrum;
 }
 
-/** The ensemble's own sampler, so that the audit looks at the replicas that are handed over. */
-const sampler: MatrixSampler = (from, seed) => {
-  const plan = planEnsemble(from);
-  return (block, replicas, out) => drawBlock(plan, seed, block, replicas, out);
-};
-
 function audit(analysis: Analysis, referenceTable: string | null): Audited {
   const { study, trueAxis, tally } = analysis;
   const sources = { where: 'study', ...(referenceTable !== null && { readTable: () => referenceTable }) };
   const reference = referenceOf(study.reference, trueAxis, tally, sources);
-  return { ...auditOf(analysis, { reference, sampler }), analysis, reference };
+  return { ...auditOf(analysis, { reference, sampler: matrixSampler }), analysis, reference };
 }
 
 /** The replicas of the given indices, the very numbers that a bundle of this study holds. */

@@ -1,5 +1,5 @@
 import { EventEmitter } from 'node:events';
-import { mkdtempSync, rmSync, writeFileSync } from 'node:fs';
+import { mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { deserialize, serialize } from 'node:v8';
@@ -43,6 +43,9 @@ vi.mock('electron', async () => {
     setWindowOpenHandler(handler: (details: unknown) => unknown) {
       this.openHandler = handler;
     }
+    printToPDF() {
+      return Promise.resolve(Buffer.from('%PDF-'));
+    }
     send(channel: string, value: unknown) {
       toRenderer.emit(channel, {}, cloned(value));
     }
@@ -61,6 +64,11 @@ vi.mock('electron', async () => {
       this.url = url;
       return Promise.resolve();
     }
+    loadFile(path: string) {
+      this.url = path;
+      return Promise.resolve();
+    }
+    destroy = () => this.calls.push('destroy');
     setTitle(title: string) {
       this.title = title;
     }
@@ -314,6 +322,18 @@ describe('files', () => {
   it('can be shown in the file manager', async () => {
     await bridge().call('reveal', { path: join(folder, 'events.csv') });
     expect(electron.shown).toStrictEqual([join(folder, 'events.csv')]);
+  });
+});
+
+describe('a report', () => {
+  it('is printed in a window of its own that runs no script, is not seen and is gone afterwards', async () => {
+    const { printInWindow } = await import('../../main/print-window');
+    const pdf = join(folder, 'report.pdf');
+    await printInWindow(join(folder, 'report.html'), pdf);
+    const printing = electron.windows.pop() as OpenWindow;
+    expect(printing.options).toMatchObject({ show: false, webPreferences: { javascript: false, sandbox: true } });
+    expect(printing.calls).toStrictEqual(['destroy']);
+    expect(readFileSync(pdf, 'utf8')).toBe('%PDF-');
   });
 });
 

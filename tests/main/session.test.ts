@@ -323,6 +323,72 @@ describe('the bundle', () => {
   });
 });
 
+describe('the deeper audit', () => {
+  it('plans more events for each kind of target', async () => {
+    const plan = (target: Argument<'plan'>['target']) => value('plan', { ...here(), target });
+    const settle = await plan({ settleFlags: true });
+    expect(settle.total).toBe(sum(settle.add));
+    const share = await plan({ matrixShare: 0.05 });
+    expect(share.reachable).toBe(true);
+    expect(share.before).toHaveLength(10);
+    expect((await plan({ matrixShare: 0.01 })).total).toBeGreaterThan(share.total);
+    const known = await plan({ efficiencySd: 0.001 });
+    expect(known.add[5]).toBeGreaterThan(0);
+    for (const spread of ['as measured', 'optimal'] as const) {
+      const more = await plan({ events: 10_000, spread });
+      expect(sum(more.add)).toBe(10_000);
+      more.after!.forEach((after, i) => expect(after).toBeLessThanOrEqual(more.before![i]!));
+    }
+  });
+
+  it('sets the usual priors side by side', async () => {
+    const { priors, largest } = await value('priorSensitivity', { ...here(), job: 'priors' });
+    expect(priors.map(({ name }) => name)).toStrictEqual(['flat', 'Jeffreys', 'shared total', 'neighbours']);
+    // The study's own prior is Jeffreys': it changes nothing.
+    expect(Math.max(...priors[1]!.change)).toBe(0);
+    expect(largest!.inSd).toBe(Math.max(...priors.flatMap(({ change }) => [...change])));
+  });
+
+  it('rehearses the use of the matrix, with progress', async () => {
+    const found = await value('rehearse', { ...here(), repetitions: 2, job: 'rehearse' });
+    expect(found.columnNames).toHaveLength(found.free.coverage95.value.length);
+    expect(found.free.overall95.value).toBeGreaterThan(0.5);
+    expect(notices.some((notice) => notice.kind === 'progress' && notice.phase === 'Rehearsing')).toBe(true);
+  });
+
+  it('counts the replicas needed for a number of digits', async () => {
+    const one = await value('replicasNeeded', { ...here(), digits: 1, job: 'digits' });
+    expect(one.replicas).toBeGreaterThanOrEqual(20_000);
+    expect(one.note).toContain('1 significant digit');
+    const close = { ...here({ credibility: 0.99999 }), digits: 1, job: 'digits' };
+    expect(await answer('replicasNeeded', close)).toMatchObject({ ok: false, code: 'input', where: 'credibility' });
+  });
+
+  it('finds no difference between a study and its own bundle', async () => {
+    const own = await value('compare', { ...here(), bundle: at('window.bundle'), job: 'compare' });
+    expect(own.names).toStrictEqual(['Invented', 'Invented']);
+    expect(own.differing).toStrictEqual([]);
+    own.difference.forEach((difference) => expect(difference).toBe(0));
+    expect(await answer('compare', { ...here(), bundle: folder, job: 'c' })).toMatchObject({ code: 'refused' });
+    const other = { ...withEdges([0, 40, 100]), bundle: at('window.bundle'), job: 'c' };
+    expect(await answer('compare', other)).toMatchObject({ ok: false, code: 'input' });
+  });
+});
+
+describe('other formats and the report', () => {
+  it('are written from a bundle to places of their kind', async () => {
+    const bundle = at('window.bundle');
+    const path = at('window.npz');
+    await value('choosePlace', { path, kind: 'converted' });
+    const converted = await value('convert', { bundle, to: 'npz', replicas: [0, 3], path, replace: false, job: 'npz' });
+    expect(converted.files[0]).toMatchObject({ path });
+    await value('choosePlace', { path: at('report.html'), kind: 'report' });
+    const asked = { bundle, path: at('report.html'), pdf: false, replace: false, job: 'report' };
+    const { files } = await value('report', asked);
+    expect(readFileSync(files[0]!.path, 'utf8')).toContain('Invented');
+  });
+});
+
 describe('the study document', () => {
   it('is saved whole, opened again, and moved with its paths', async () => {
     mkdirSync(at('elsewhere'));
