@@ -72,6 +72,7 @@ export class Bench {
   }
 
   go(stage: StageName): void {
+    if (stage !== this.stage) this.chosen.keepFor(stage);
     this.stage = stage;
     this.sheet = null;
     this.choosing.leave();

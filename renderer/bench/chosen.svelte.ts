@@ -46,6 +46,13 @@ export class Chosen {
     return this.now.kind === 'run' ? this.now.run : null;
   }
 
+  /** Drops a choice that another stage has no picture of: files and axes; places of the matrix go everywhere. */
+  keepFor(stage: string): void {
+    const { kind } = this.now;
+    if (kind === 'file' || kind === 'field' || kind === 'reason') this.clear();
+    if (kind === 'axis' && stage !== 'axes') this.clear();
+  }
+
   /** Drops a choice that lies outside a matrix of this shape. */
   keepWithin(columns: number, outcomes: number): void {
     if ((this.column ?? 0) >= columns || (this.outcome ?? 0) >= outcomes) this.clear();
