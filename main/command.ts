@@ -152,6 +152,18 @@ function program(): Command {
     });
 
   entasis
+    .command('report')
+    .description('a bundle as one HTML file to read and sign, or as PDF')
+    .argument('<bundle>', 'folder of a bundle')
+    .option('--out <file>', "the file to write; by default the bundle's name beside it")
+    .option('--pdf', 'as PDF, printed by a Chromium-family browser of this machine')
+    .addOption(jsonOption())
+    .action(async (bundle: string, options) => {
+      const { report } = await import('./commands/report');
+      await report(bundle, options, surroundings);
+    });
+
+  entasis
     .command('open')
     .description('the desktop window')
     .argument('[study]', 'study document')

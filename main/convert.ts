@@ -41,7 +41,7 @@ export async function convertBundle(conversion: Conversion): Promise<WrittenFile
   const bundle = openBundle(conversion.bundle);
   const format = formatOf(to);
   const replicas = rangeFor(conversion, bundle);
-  checkPlace(conversion, format.endings);
+  checkPlace(conversion, `replicas${format.endings[0]}`);
   const files = await format.write(bundle, {
     out,
     replicas,
@@ -63,14 +63,20 @@ function rangeFor({ to, replicas }: Conversion, bundle: Bundle): ReplicaRange {
   return formatOf(to).replicas ? resolveRange(replicas, bundle.replicas, bundle.folder) : { from: 0, to: 0 };
 }
 
-function checkPlace({ bundle, out, replace }: Conversion, endings: readonly string[]): void {
+/**
+ * Throws `InputError` for a place that lies inside the bundle, is a folder, or holds a file that may not be replaced.
+ * `example` is a name that such a file might have.
+ */
+export function checkPlace(
+  { bundle, out, replace }: Pick<Conversion, 'bundle' | 'out' | 'replace'>,
+  example: string,
+): void {
   const inside = relative(resolve(bundle), resolve(out));
   if (!inside.startsWith(`..${sep}`) && inside !== resolve(out)) {
     throw new InputError(out, 'lies inside the bundle', 'name a place outside: a bundle holds what its manifest names');
   }
   const facts = statSync(out, { throwIfNoEntry: false });
-  if (facts?.isDirectory())
-    throw new InputError(out, 'is a folder', `name a file, for instance ${join(out, `replicas${endings[0]}`)}`);
+  if (facts?.isDirectory()) throw new InputError(out, 'is a folder', `name a file, for instance ${join(out, example)}`);
   if (facts && replace === false)
     throw new InputError(out, 'is there already', 'choose another name, or let it be replaced');
 }

@@ -26,6 +26,19 @@ export function auditPopulation(input: AuditInput): Findings {
   };
 }
 
+/**
+ * Events to add to each column, `[columns]`, that lift `empty`, `thin` and `prior-led` if they are like those it has; 0 where none
+ * of them is raised, `Infinity` where no number lifts a limit of 0 on the prior's share.
+ */
+export function eventsToPopulate(input: AuditInput): Float64Array {
+  const events = columnEvents(input);
+  return events.map((n, j) => Math.ceil(eventsMissing(populationOf(input, '', j, n))));
+}
+
+function eventsMissing({ effective, prior, growth, limits }: Population): number {
+  return Math.max(0, limits.thin - effective, entriesAgainst(prior, limits.priorLed) - effective) / growth;
+}
+
 interface Population {
   column: string;
   events: number;
@@ -49,8 +62,9 @@ function populationOf({ posterior, study }: AuditInput, column: string, j: numbe
   return { column, events, effective, prior, priorShare, growth, limits };
 }
 
-function emptyFlag({ column, events, growth, prior, limits }: Population): Flag {
-  const needed = Math.max(limits.thin, entriesAgainst(prior, limits.priorLed)) / growth;
+function emptyFlag(population: Population): Flag {
+  const { column, events } = population;
+  const needed = eventsMissing(population);
   return countFlag({
     id: 'empty',
     column,
