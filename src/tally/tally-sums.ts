@@ -63,8 +63,7 @@ export class TallySums {
     const { columns, outcomes } = this.places;
     this.trueBinner.places(truth, rows, columns);
     this.recoBinner.places(reco, rows, outcomes);
-    const matched =
-      this.weighted || kept.run || this.unmatched ? this.addAll(kept, runLabels) : this.addPlain(events);
+    const matched = this.weighted || kept.run || this.unmatched ? this.addAll(kept, runLabels) : this.addPlain(events);
     this.widenRange(truth, rows);
     this.ledger.tallied += matched;
     this.ledger.unmatched += rows - matched;

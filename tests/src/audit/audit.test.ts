@@ -84,7 +84,7 @@ describe('the whole audit', () => {
     it(`${name}: every measure is a finite number or absent with its reason, every flag says what it saw`, () => {
       const audit = auditOf(input, sourcesOf(input));
       expect(Object.keys(audit.measures.columns).sort()).toEqual(COLUMN_MEASURES);
-      expect(Object.keys(audit.measures.bins).sort()).toEqual(['dataVariance', 'feedIn', 'folded', 'matrixVariance']);
+      expect(Object.keys(audit.measures.bins).sort()).toEqual(['background', 'dataVariance', 'feedIn', 'folded', 'matrixVariance']);
       expect(Object.keys(audit.measures.matrix).sort()).toEqual(['resolvable', 'singularValues']);
       const { columns, bins, matrix } = audit.measures;
       for (const measure of Object.values({ ...columns, ...bins, ...matrix })) {

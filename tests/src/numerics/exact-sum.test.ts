@@ -53,8 +53,13 @@ describe('exact sums', () => {
   it('have the same value and the same bytes in any order and any split', () => {
     fc.assert(
       fc.property(fc.array(weights, { maxLength: 40 }), fc.array(fc.nat(), { maxLength: 40 }), (values, keys) => {
-        const shuffled = values.map((x, i) => [keys[i] ?? i, x] as const).sort((a, b) => a[0] - b[0]).map(([, x]) => x);
-        const parts = [sumOf(shuffled.slice(0, 7)), sumOf(shuffled.slice(7))].map((part) => ExactSums.fromParts(part.toParts()));
+        const shuffled = values
+          .map((x, i) => [keys[i] ?? i, x] as const)
+          .sort((a, b) => a[0] - b[0])
+          .map(([, x]) => x);
+        const parts = [sumOf(shuffled.slice(0, 7)), sumOf(shuffled.slice(7))].map((part) =>
+          ExactSums.fromParts(part.toParts()),
+        );
         const joined = new ExactSums(1);
         for (const part of parts) joined.merge(part);
         expect(joined.canonicalParts()).toEqual(sumOf(values).canonicalParts());
