@@ -66,8 +66,13 @@ export class Keepsakes {
     this.offered = null;
   }
 
-  /** The newest draft that no running window owns; `null` where there is none. Older ones are cleared away. */
+  /**
+   * The draft of this very window, whose page was loaded again, else the newest that no running window owns; `null` where
+   * there is none. Older ones are cleared away.
+   */
   draftLeftBehind(): Draft | null {
+    const own = draftSchema.safeParse(this.read(this.own));
+    if (own.success) return own.data;
     const left = this.names().filter((name) => isLeftBehind(name));
     const drafts = left.flatMap((name) => {
       const draft = draftSchema.safeParse(this.read(name));

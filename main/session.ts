@@ -61,7 +61,9 @@ export class Session {
       const handler = this.handlers[call] as (argument: unknown) => unknown;
       return { ok: true, value: await handler(checked.data) };
     } catch (error) {
-      return refusalOf(error);
+      const refusal = refusalOf(error);
+      if (refusal.code === 'fault' && process.env['ENTASIS_TRACE']) console.error(error);
+      return refusal;
     }
   }
 

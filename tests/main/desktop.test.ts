@@ -263,6 +263,17 @@ describe('calls of the page', () => {
     expect(await bridge().call('constructor' as never, {} as never)).toMatchObject({ ok: false, what: 'no such call' });
   });
 
+  it('may be made with reactive state, which is a proxy that no clone takes', async () => {
+    const { connect } = await import('../../main/page-bridge');
+    vi.stubGlobal('window', { entasis: bridge() });
+    const page = await connect();
+    vi.unstubAllGlobals();
+    const argument = new Proxy({ title: 'A proxy', edited: false }, {});
+    await expect(bridge().call('setTitle', argument)).rejects.toThrow();
+    expect(valueOf(await page.call('setTitle', argument))).toBe(true);
+    expect(page.transport).toBe('desktop');
+  });
+
   it('carry typed arrays as they are, and no shared memory', () => {
     expect(cloned(Float64Array.of(1, NaN))).toStrictEqual(Float64Array.of(1, NaN));
     expect(() => cloned(new Float64Array(new SharedArrayBuffer(8)))).toThrow();

@@ -62,6 +62,15 @@ describe('a draft', () => {
     expect(new Keepsakes(folder).draftLeftBehind()).toBeNull();
   });
 
+  it('is offered to its own window when the page is loaded again', () => {
+    const keepsakes = new Keepsakes(folder);
+    expect(keepsakes.draftLeftBehind()).toBeNull();
+    keepsakes.keepDraft(draft(1));
+    expect(keepsakes.draftLeftBehind()).toStrictEqual(draft(1));
+    keepsakes.dropDraft();
+    expect(keepsakes.draftLeftBehind()).toBeNull();
+  });
+
   it('is the newest of several, the others are cleared away', () => {
     const pid = endedProcess();
     for (const saved of [1, 3, 2])
