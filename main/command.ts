@@ -164,6 +164,17 @@ function program(): Command {
     });
 
   entasis
+    .command('compare')
+    .description('two campaigns of the same axes: what differs, column by column, and in the folded reference spectrum')
+    .argument('<A>', 'folder of a bundle or a part')
+    .argument('<B>', 'the other one')
+    .addOption(jsonOption())
+    .action(async (first: string, second: string, options) => {
+      const { compare } = await import('./commands/compare');
+      await compare(first, second, options);
+    });
+
+  entasis
     .command('open')
     .description('the desktop window')
     .argument('[study]', 'study document')

@@ -76,8 +76,8 @@ export function compareTallies(
   };
 }
 
-/** The rate at which adjusted p-values are meant to be read: it sets how finely they are drawn. */
-const FALSE_DISCOVERIES = 0.05;
+/** The rate at which adjusted p-values are meant to be read; it sets how finely they are drawn. */
+export const FALSE_DISCOVERIES = 0.05;
 
 function requireSameAxes(first: Tally, second: Tally, where: string): void {
   for (const [what, a, b] of [

@@ -48,7 +48,8 @@ const DAMAGED = 'the bundle is damaged or of another version: build it again';
 /** A table of a spectrum is a few kilobytes; a file beyond this is something else. */
 const MOST_TABLE_BYTES = 16 << 20;
 
-function referenceTable({ folder }: Bundle): string {
+/** The text of the table that a bundle keeps of its reference spectrum. Throws `InputError` where there is none. */
+export function referenceTable({ folder }: Bundle): string {
   const path = join(folder, 'reference.csv');
   if (existsSync(path) && statSync(path).size <= MOST_TABLE_BYTES) return readFileSync(path, 'utf8');
   throw new InputError(path, 'the reference table cannot be read', DAMAGED);
