@@ -18,6 +18,7 @@
  *   chosen (`code: 'refused'`). Hidden files and folders cannot be chosen in the frame.
  */
 import { z } from 'zod';
+import type { BinMeasure, ColumnMeasure } from '../src/audit/findings';
 import type { Flag } from '../src/audit/flag';
 import type { FileFacts } from '../src/events/batch';
 import type { Study, StudyInput } from '../src/study/study';
@@ -317,20 +318,7 @@ export type MeasureView =
     }
   | { value: null; lower: null; upper: null; reason: string };
 
-export type ColumnMeasure =
-  | 'effectiveEntries'
-  | 'priorShare'
-  | 'efficiency'
-  | 'acceptance'
-  | 'spillBelow'
-  | 'spillAbove'
-  | 'purity'
-  | 'stability'
-  | 'bias'
-  | 'resolution'
-  | 'slopeBias'
-  | 'drift';
-export type BinMeasure = 'feedIn' | 'folded' | 'matrixVariance' | 'dataVariance' | 'background';
+export type { BinMeasure, ColumnMeasure };
 
 /** As `audit.json` and `flags.json`. */
 export interface AuditView {

@@ -1,6 +1,6 @@
 import { readFileSync } from 'node:fs';
 import { resolve } from 'node:path';
-import { analyseModel, modelOf } from '../src/handover/analyse';
+import { analyseModel, modelOf, type Analysis, type Model } from '../src/handover/analyse';
 import { FolderInTheMaking } from '../src/handover/folder-in-the-making';
 import type { Manifest } from '../src/handover/manifest';
 import {
@@ -36,6 +36,8 @@ export interface BuildOptions {
   version: string;
   drawWorker: URL;
   workers: number;
+  /** Works out what follows from the model in another thread; where it is absent, this one does. */
+  analyse?: (model: Model) => Promise<Analysis>;
   signal?: AbortSignal | undefined;
   onProgress?: (progress: Progress) => void;
 }
@@ -74,7 +76,8 @@ export async function buildBundle(options: BuildOptions): Promise<BuiltBundle> {
     });
     // Audit and tables are made while the workers draw; a fault in them must not leave the drawing without a listener.
     drawing.catch(() => undefined);
-    const contents = { version, ...bundleSource(source), ...analyseModel(model, sources) };
+    const analysis = options.analyse ? await options.analyse(model) : analyseModel(model, sources);
+    const contents = { version, ...bundleSource(source), ...analysis };
     if (study.reference.file !== undefined) folder.write('reference.csv', sources.readTable(study.reference.file));
     writeBundleFiles(folder, contents);
     const drawn = await drawing;
@@ -101,7 +104,8 @@ function bundleSource({ inputs, rejectedRows }: BundleSource) {
   return { inputs: named, rejectedRows: rejectedRows() };
 }
 
-function tableReader(folder: string): (file: string) => string {
+/** Reads a table that a study in `folder` names. Throws `InputError` where it cannot be read. */
+export function tableReader(folder: string): (file: string) => string {
   return (file) => {
     try {
       return readFileSync(resolve(folder, file), 'utf8');

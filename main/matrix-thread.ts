@@ -17,7 +17,7 @@ export class MatrixThread {
 
   /** Calls `name` about a tally. On the signal the worker is ended, and the call rejects as `Cancelled`. */
   async ask<N extends Name>(
-    { key, tally }: KeyedTally,
+    { key, tally }: Pick<KeyedTally, 'key' | 'tally'> & Partial<KeyedTally>,
     name: N,
     argument: Omit<MatrixCalls[N]['argument'], 'key'>,
     job: { signal?: AbortSignal; onNote?: (note: unknown) => void } = {},

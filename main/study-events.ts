@@ -83,10 +83,10 @@ export class StudyEvents {
   }
 
   /** The reading that a bundle of this study is built from, its tally that of the study's own axes. */
-  source(at: StudyFiles, job: ReadJob): Promise<{ reading: Reading; tally: Tally }> {
+  source(at: StudyFiles, job: ReadJob): Promise<KeyedTally & { reading: Reading }> {
     return this.inTurn(async () => {
-      const { tally } = await this.tallyNow(at, job);
-      return { reading: this.reading!.reading, tally };
+      const keyed = await this.tallyNow(at, job);
+      return { ...keyed, reading: this.reading!.reading };
     });
   }
 

@@ -1,4 +1,5 @@
 import type { BundleWritten, Checked, Verification, WrittenFiles } from '../bridge';
+import type { Model } from '../../src/handover/analyse';
 import { buildBundle } from '../build';
 import { convertBundle } from '../convert';
 import type { Job } from '../jobs';
@@ -6,6 +7,7 @@ import { writeReport } from '../report';
 import { verifyBundle } from '../verify';
 import { studyFiles } from './event-calls';
 import type { Desk, Handlers } from './handlers';
+import { referenceTable } from './matrix-calls';
 
 /** Writing the bundle, checking it, and handing it over in other formats. */
 export function handOverCalls(desk: Desk): Handlers<'build' | 'verify' | 'convert' | 'report'> {
@@ -24,7 +26,13 @@ async function build(desk: Desk, argument: Checked<'build'>, job: Job): Promise<
   const out = desk.chosen.mayWrite(argument.path, 'bundle', argument.replace);
   const { version, workers, workerFiles } = desk;
   const { signal, progress: onProgress } = job;
-  const { reading, tally } = await desk.events.source(files, { signal, onProgress });
+  const { reading, ...keyed } = await desk.events.source(files, { signal, onProgress });
+  const { tally } = keyed;
+  const asked = { study: files.study, referenceTable: referenceTable(desk, files.study, files.folder) };
+  const analyse = async (model: Model) => ({
+    ...model,
+    ...(await desk.matrix.ask(keyed, 'analysis', asked, { signal })),
+  });
   const source = { tally, inputs: reading.inputs, rejectedRows: reading.rejectedRows };
   const settings = { version, workers, drawWorker: workerFiles.draw, signal, onProgress };
   const { manifest } = await buildBundle({
@@ -33,6 +41,7 @@ async function build(desk: Desk, argument: Checked<'build'>, job: Job): Promise<
     folder: files.folder,
     source,
     out,
+    analyse,
     ...settings,
   });
   desk.chosen.bundle(out, true);

@@ -65,7 +65,7 @@ async function at<N extends 'posterior' | 'audit'>(
 const MOST_TABLE_BYTES = 16 * 2 ** 20;
 
 /** Text of the table file that the study's reference spectrum names, if it names one. */
-function referenceTable({ chosen }: Desk, { reference }: Study, folder: string): string | null {
+export function referenceTable({ chosen }: Desk, { reference }: Study, folder: string): string | null {
   if (reference.kind !== 'table') return null;
   const path = chosen.mayRead(resolve(folder, reference.file!));
   if (statSync(path).size > MOST_TABLE_BYTES)

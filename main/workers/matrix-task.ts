@@ -1,6 +1,6 @@
 import { auditOf, type Audit } from '../../src/audit/audit';
 import type { AuditInput } from '../../src/audit/audit-input';
-import { matrixSampler } from '../../src/handover/analyse';
+import { matrixSampler, type Analysis as BundleAnalysis } from '../../src/handover/analyse';
 import { referenceOf, type ReferenceSpectrum } from '../../src/audit/reference';
 import { BLOCK, drawBlock, planEnsemble, type EnsemblePlan } from '../../src/ensemble/draw';
 import { posteriorOf } from '../../src/posterior/posterior';
@@ -54,6 +54,8 @@ export type MatrixCalls = {
   column: { argument: AtTally & { column: number }; result: ColumnView };
   replicas: { argument: AtTally & { indices: number[] }; result: Replicas };
   audit: { argument: AtTally; result: AuditView };
+  /** What a bundle says of the tally, beside the model itself. */
+  analysis: { argument: AtTally; result: Pick<BundleAnalysis, 'summary' | 'reference' | 'audit'> };
   influence: { argument: AtTally; result: InfluenceView };
   plan: { argument: AtTally & Pick<Checked<'plan'>, 'target'>; result: PlanView };
   priorSensitivity: { argument: AtTally; result: PriorSensitivityView };
@@ -81,15 +83,16 @@ export function matrixTask(): Handlers<MatrixCalls> {
   const analyses = new Recent<Analysis>(MOST_KEPT);
   const audits = new Recent<Audited>(MOST_KEPT);
   const analysed = (at: AtTally): Analysis => {
-    const { prior, credibility } = at.study;
-    const key = canonicalJson([at.key, prior, credibility]);
+    const { axes, prior, credibility } = at.study;
+    // A tally knows no units, but what is said of it does.
+    const key = canonicalJson([at.key, axes, prior, credibility]);
     const kept = analyses.of(key, () => analyse(tallies.get(at.key), at.study));
     // What the posterior does not depend on is the caller's own: limits, reference, seed.
     return { ...kept, study: at.study };
   };
   const audited = (at: AtTally): Audited => {
-    const { prior, credibility, limits, reference, ensemble } = at.study;
-    const key = canonicalJson([at.key, prior, credibility, limits, reference, ensemble.seed, at.referenceTable]);
+    const { axes, prior, credibility, limits, reference, ensemble } = at.study;
+    const key = canonicalJson([at.key, axes, prior, credibility, limits, reference, ensemble.seed, at.referenceTable]);
     return audits.of(key, () => audit(analysed(at), at.referenceTable));
   };
   return {
@@ -103,6 +106,10 @@ export function matrixTask(): Handlers<MatrixCalls> {
     column: ({ column, ...at }) => ({ result: columnView(analysed(at), column) }),
     replicas: ({ indices, ...at }) => ({ result: replicasOf(analysed(at), at.study.ensemble.seed, indices) }),
     audit: (at) => timed(() => auditView(audited(at))),
+    analysis(at) {
+      const { analysis, reference, measures, flags, deep } = audited(at);
+      return { result: { summary: analysis.summary(), reference, audit: { measures, flags, deep } } };
+    },
     influence: (at) => timed(() => influenceView(audited(at))),
     plan: ({ target, ...at }) => timed(() => planView(audited(at), target)),
     priorSensitivity: (at) => timed(() => sensitivityView(analysed(at))),
