@@ -70,6 +70,12 @@ function program(): Command {
     .argument('<study>', 'study document (*.study.json)')
     .option('--out <folder>', "the bundle; by default the study's name beside it")
     .option('--from <part...>', 'build from tallied parts instead of the event files')
+    .addOption(
+      new Option(
+        '--digits <d>',
+        "as many replicas as so many significant digits need, instead of the study's",
+      ).argParser(wholeNumber(1)),
+    )
     .addOption(workersOption())
     .addOption(jsonOption())
     .action(async (study: string, options) => {

@@ -5,17 +5,20 @@ import { defaultBundleFolder, expandFiles } from '../../src/study/paths';
 import { InputError } from '../../src/study/input-error';
 import type { Study } from '../../src/study/study';
 import { tallyPlan } from '../../src/tally/plan';
-import { buildBundle, type BuiltBundle, type BundleSource } from '../build';
+import { buildBundle, tableReader, type BuiltBundle, type BundleSource } from '../build';
 import type { Surroundings } from '../surroundings';
 import { combineParts } from '../parts';
+import { sizedEnsemble } from '../ensemble-size';
 import { ProgressLine } from '../progress-line';
 import { readEvents } from '../read-events';
 import { readStudyFile } from '../study-file';
+import { windowFilesBeside } from '../window-files';
 import { flagLines, ledgerText } from './wording';
 
 export interface BuildFlags {
   out?: string;
   from?: string[];
+  digits?: number;
   workers: number;
   json?: boolean;
 }
@@ -38,8 +41,9 @@ export async function build(path: string, flags: BuildFlags, around: Surrounding
       });
   try {
     const out = flags.out ?? defaultBundleFolder(path);
+    const sized = flags.digits === undefined ? null : await withDigits(flags.digits, study, path, source, around, line);
     const built = await buildBundle({
-      study,
+      study: sized?.study ?? study,
       where: path,
       folder: dirname(resolve(path)),
       source,
@@ -50,10 +54,28 @@ export async function build(path: string, flags: BuildFlags, around: Surrounding
     });
     line.clear();
     const seconds = (performance.now() - started) / 1000;
-    process.stdout.write(flags.json ? `${JSON.stringify(buildJson(built, seconds))}\n` : buildText(built, seconds));
+    const note = sized?.note ?? null;
+    process.stdout.write(
+      flags.json ? `${JSON.stringify(buildJson(built, seconds, note))}\n` : buildText(built, seconds, note),
+    );
   } finally {
     await source.close();
   }
+}
+
+function withDigits(
+  digits: number,
+  study: Study,
+  path: string,
+  { tally }: BundleSource,
+  { readWorker, signal }: Surroundings,
+  line: ProgressLine,
+): Promise<{ study: Study; note: string }> {
+  const { file } = study.reference;
+  const referenceTable = file === undefined ? null : tableReader(dirname(resolve(path)))(file);
+  const matrixWorker = windowFilesBeside(readWorker).workerFiles.matrix;
+  const onProgress = line.show.bind(line);
+  return sizedEnsemble({ study, tally, referenceTable, digits, matrixWorker, signal, onProgress });
 }
 
 type ClosingSource = BundleSource & { close(): void | Promise<void> };
@@ -83,7 +105,7 @@ function checkNoFileLeftOut(study: Study, where: string, tallied: Set<string>): 
   }
 }
 
-function buildJson({ out, manifest, contents }: BuiltBundle, seconds: number): unknown {
+function buildJson({ out, manifest, contents }: BuiltBundle, seconds: number, note: string | null): unknown {
   const { ledger, columns, outcomes, flags, study, seed, replicas, files, title } = manifest;
   const raised = contents.audit.flags.filter(({ state }) => state !== 'clear');
   return {
@@ -97,17 +119,19 @@ function buildJson({ out, manifest, contents }: BuiltBundle, seconds: number): u
     raised,
     seed,
     replicas,
+    ...(note !== null && { digits: note }),
     files,
     seconds,
   };
 }
 
-function buildText({ out, manifest, contents }: BuiltBundle, seconds: number): string {
+function buildText({ out, manifest, contents }: BuiltBundle, seconds: number, note: string | null): string {
   const { ledger, columns, outcomes, replicas, seed, inputs, title, flags } = manifest;
   const lines = [
     title,
     ...ledgerText(ledger, inputs.length),
     `matrix: ${columns.length} columns x ${outcomes.length} outcomes; ${formatCount(replicas)} replicas, seed ${seed}`,
+    ...(note === null ? [] : [`digits: ${note}`]),
     `audit: ${flags.flagged} flagged, ${flags.undecided} undecided`,
     ...flagLines(contents.audit.flags),
     `bundle: ${out} (${seconds.toFixed(1)} s)`,
