@@ -20,6 +20,13 @@ import { Results } from './results.svelte';
 import { blankStudy, StudyFile } from './study-file.svelte';
 
 export type StageName = 'events' | 'axes' | 'matrix' | 'audit' | 'hand-over';
+export const STAGE_TITLES: Record<StageName, string> = {
+  events: 'Events',
+  axes: 'Axes',
+  matrix: 'Matrix',
+  audit: 'Audit',
+  'hand-over': 'Hand over',
+};
 export const STAGES: readonly StageName[] = ['events', 'axes', 'matrix', 'audit', 'hand-over'];
 
 /** What takes the place of the stage for a moment. */

@@ -3,18 +3,29 @@ import type { AxisDocument } from '../../src/study/study';
 
 type Spacing = 'linear' | 'log';
 
-/** A dragged edge stops at this share of the gap before a neighbour: bins stay wide enough to be taken hold of again. */
+/**
+ * A dragged edge stops before a neighbour, at this share of the two bins beside it (of the next bin, at an end): bins
+ * stay wide enough to be taken hold of again, however long the drag.
+ */
 export const CLOSEST = 0.02;
 
 /** The edges after one was moved: it stays between its neighbours, and above zero on a log axis. */
 export function moveEdge(edges: readonly number[], i: number, to: number, spacing: Spacing): number[] {
-  const before = edges[i - 1];
-  const after = edges[i + 1];
-  let value = to;
-  if (before !== undefined) value = Math.max(value, before + CLOSEST * (edges[i]! - before));
-  if (after !== undefined) value = Math.min(value, after - CLOSEST * (after - edges[i]!));
-  if (spacing === 'log' && !(value > 0)) value = edges[i]!;
+  const before = edges[i - 1] ?? -Infinity;
+  const after = edges[i + 1] ?? Infinity;
+  const margin = CLOSEST * widthAround(edges, i);
+  let value = Math.min(Math.max(to, before + margin), after - margin);
+  if (!(value > before && value < after) || (spacing === 'log' && !(value > 0))) value = edges[i]!;
   return edges.map((edge, n) => (n === i ? value : edge));
+}
+
+/** Of what the edge itself does not change while it is moved: its neighbours' distance, or the next bin's width. */
+function widthAround(edges: readonly number[], i: number): number {
+  const before = edges[i - 1] ?? edges[i + 1]!;
+  const after = edges[i + 1] ?? edges[i - 1]!;
+  if (before !== after) return after - before;
+  const beyond = i === 0 ? edges[2] : edges[i - 2];
+  return Math.abs((beyond ?? edges[i]!) - before);
 }
 
 /** The edges with one more, unless it is there. */

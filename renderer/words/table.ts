@@ -38,15 +38,27 @@ export function arqueroTable({ columns, values }: TableOf): ColumnTable {
 export function arranged(table: ColumnTable, words: string, sorting: Sorting | null): ColumnTable {
   const names = table.columnNames();
   const data = table.data() as Record<string, Entry[]>;
-  const sought = words.toLowerCase().split(/\s+/).filter(Boolean);
-  const kept = new BitSet(table.totalRows());
-  for (let row = 0; row < table.totalRows(); row++) {
-    const text = names.map((name) => String(data[name]![row] ?? '').toLowerCase()).join(' ');
-    if (sought.every((word) => text.includes(word))) kept.set(row);
-  }
+  const kept = rowsWith(words, searched(names.map((name) => data[name]!)), table.totalRows());
   const name = sorting ? names[sorting.column] : undefined;
   const order = name === undefined ? null : comparison(data[name]!, sorting!.descending);
   return table.create({ filter: kept, order } as Parameters<ColumnTable['create']>[0]);
+}
+
+/** Texts are searched; numbers too where a table has nothing else. */
+function searched(columns: Entry[][]): Entry[][] {
+  const texts = columns.filter((column) => column.some((entry) => typeof entry === 'string'));
+  return texts.length > 0 ? texts : columns;
+}
+
+function rowsWith(words: string, columns: Entry[][], rows: number): BitSet | null {
+  const sought = words.toLowerCase().split(/\s+/).filter(Boolean);
+  if (sought.length === 0) return null;
+  const kept = new BitSet(rows);
+  for (let row = 0; row < rows; row++) {
+    const text = columns.map((column) => String(column[row] ?? '').toLowerCase()).join(' ');
+    if (sought.every((word) => text.includes(word))) kept.set(row);
+  }
+  return kept;
 }
 
 /** Numbers by size, texts by their numbers and letters; what is missing comes last either way. */

@@ -14,19 +14,29 @@ import {
 } from '../../renderer/bench/edges';
 
 describe('edges moved by hand', () => {
-  it('stay in order however far they are dragged', () => {
+  it('stay in order however far and however long they are dragged', () => {
+    const moves = fc.array(fc.tuple(fc.nat(4), fc.double({ min: -1e9, max: 1e9, noNaN: true })), { maxLength: 40 });
     fc.assert(
-      fc.property(fc.nat(4), fc.double({ min: -1e9, max: 1e9, noNaN: true }), (i, to) => {
-        const edges = moveEdge([0, 1, 2, 4, 8], i, to, 'linear');
+      fc.property(moves, (list) => {
+        let edges = [0, 1, 2, 4, 8];
+        for (const [i, to] of list) edges = moveEdge(edges, i, to, 'linear');
         for (let n = 1; n < edges.length; n++) expect(edges[n]!).toBeGreaterThan(edges[n - 1]!);
       }),
     );
   });
 
-  it(`stop at ${CLOSEST} of the gap to a neighbour, and pass freely before it`, () => {
-    expect(moveEdge([0, 1, 2], 1, 1.97, 'linear')[1]).toBe(1.97);
-    expect(moveEdge([0, 1, 2], 1, 1.99, 'linear')[1]).toBe(2 - CLOSEST);
-    expect(moveEdge([0, 1, 2], 1, 0.01, 'linear')[1]).toBe(CLOSEST);
+  it('do not creep into a neighbour while they are held against it', () => {
+    let edges = [0, 1, 2];
+    for (let i = 0; i < 1000; i++) edges = moveEdge(edges, 1, 5, 'linear');
+    expect(edges[1]).toBe(2 - 2 * CLOSEST);
+  });
+
+  it(`stop at ${CLOSEST} of the bins beside them, and pass freely before it`, () => {
+    expect(moveEdge([0, 1, 2], 1, 1.95, 'linear')[1]).toBe(1.95);
+    expect(moveEdge([0, 1, 2], 1, 1.97, 'linear')[1]).toBe(2 - 2 * CLOSEST);
+    expect(moveEdge([0, 1, 2], 1, 0.01, 'linear')[1]).toBe(2 * CLOSEST);
+    expect(moveEdge([0, 1, 2], 0, 3, 'linear')[0]).toBe(1 - CLOSEST);
+    expect(moveEdge([0, 1, 2], 2, -3, 'linear')[2]).toBe(1 + CLOSEST);
   });
 
   it('never reach zero on a log axis', () => {
