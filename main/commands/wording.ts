@@ -39,8 +39,13 @@ function groupLines(state: 'flagged' | 'undecided', id: string, group: Flag[]): 
   for (const { column, bin, evidence, advice } of group.slice(0, MOST_PLACES)) {
     const place = column ?? (bin === null ? null : `bin ${bin}`);
     const words = [evidence, advice].filter((text) => text !== '').join('; ');
-    lines.push(`      ${place === null ? words : `${place}: ${words}`}`);
+    lines.push(`      ${place === null ? words : `${shortNumbers(place)}: ${words}`}`);
   }
   if (group.length > MOST_PLACES) lines.push(`      and ${group.length - MOST_PLACES} more in flags.json`);
   return lines;
+}
+
+/** Edges are named to the last digit; a reader of a terminal needs six. */
+function shortNumbers(name: string): string {
+  return name.replace(/-?\d+\.\d{6,}(e[-+]?\d+)?/g, (text) => String(Number(Number(text).toPrecision(6))));
 }

@@ -3,7 +3,7 @@ import { columnShares, readingOf } from './column-share';
 import type { Findings } from './findings';
 import { listMeasure } from './measure';
 import { shareFlag, type ShareLimit } from './share-flag';
-import { formatCount, formatShare } from './wording';
+import { countOf, formatCount, formatShare } from './wording';
 
 export const LOSSES_UNRECORDED = 'losses are not recorded, so efficiency is not measurable';
 
@@ -20,7 +20,7 @@ export function auditLoss(input: AuditInput): Findings {
     side: 'below',
     credibility: input.study.credibility,
     evidence: ({ mean, lower, upper, inside, events }) =>
-      `efficiency ${formatShare(mean, lower, upper)}: ${formatCount(events - inside)} of ${formatCount(events)} events lost`,
+      `efficiency ${formatShare(mean, lower, upper)}: ${formatCount(events - inside)} of ${countOf(events, 'event')} lost`,
     remedy: 'more calibration events will not lift it: find the cause of the losses, or leave the column out of use',
   };
   return {

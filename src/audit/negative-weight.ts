@@ -2,7 +2,7 @@ import { columnEvents, unitOf, type AuditInput } from './audit-input';
 import { countFlag } from './count-flag';
 import type { Findings } from './findings';
 import type { Flag } from './flag';
-import { formatCount, formatEvents, formatUncertain } from './wording';
+import { countOf, eventsOf, formatUncertain } from './wording';
 
 /** Standard deviations from zero at which the sign of a cell's weight is taken as settled. */
 const SIGN_SETTLED = 2;
@@ -52,7 +52,7 @@ function clampedCells({ tally, posterior, recoAxis }: AuditInput, j: number): Ce
 }
 
 function describe({ name, weight, uncertainty, events }: Cell): string {
-  return `${name}: weight ${formatUncertain(weight, uncertainty)} from ${formatCount(events)} events`;
+  return `${name}: weight ${formatUncertain(weight, uncertainty)} from ${countOf(events, 'event')}`;
 }
 
 function remedyOf(cells: Cell[], events: number): string {
@@ -61,5 +61,5 @@ function remedyOf(cells: Cell[], events: number): string {
   if (surest >= SIGN_SETTLED) return `${kept}; a weight so far below zero is no fluctuation: correct the weights`;
   if (surest === 0) return `${kept}; a weight of zero tells nothing of its sign: merge bins, or add events`;
   const missing = events * ((SIGN_SETTLED / surest) ** 2 - 1);
-  return `${kept}; about ${formatEvents(missing)} more events in this column would tell a fluctuation from a truly negative content, or merge bins`;
+  return `${kept}; about ${eventsOf(missing, 'more ')} in this column would tell a fluctuation from a truly negative content, or merge bins`;
 }

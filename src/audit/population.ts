@@ -3,7 +3,7 @@ import { countFlag } from './count-flag';
 import type { Findings } from './findings';
 import type { Flag } from './flag';
 import { listMeasure } from './measure';
-import { formatCount, formatEvents, formatNumber, formatPercent } from './wording';
+import { countOf, eventsOf, formatNumber, formatPercent } from './wording';
 
 /** Effective entries and prior share of every column, and the flags `empty`, `thin` and `prior-led`. */
 export function auditPopulation(input: AuditInput): Findings {
@@ -71,8 +71,8 @@ function emptyFlag(population: Population): Flag {
     value: events,
     limit: 0,
     isBeyond: events === 0,
-    evidence: events === 0 ? 'no events' : `${formatCount(events)} events`,
-    remedy: `${Number.isFinite(needed) ? `add about ${formatEvents(needed)} events` : 'add events'} to this column, or merge it with a neighbour`,
+    evidence: events === 0 ? 'no events' : `${countOf(events, 'event')}`,
+    remedy: `${Number.isFinite(needed) ? `add about ${eventsOf(needed)}` : 'add events'} to this column, or merge it with a neighbour`,
   });
 }
 
@@ -84,14 +84,14 @@ function thinFlag({ column, events, effective, growth, limits }: Population): Fl
     value: effective,
     limit: limits.thin,
     isBeyond: effective < limits.thin,
-    evidence: `${formatNumber(effective, 4)} effective entries from ${formatCount(events)} events`,
-    remedy: `about ${formatEvents(missing)} more events of the same weights would bring it to ${formatNumber(limits.thin)}`,
+    evidence: `${formatNumber(effective, 4)} effective entries from ${countOf(events, 'event')}`,
+    remedy: `about ${eventsOf(missing, 'more ')} ${growth === 1 ? '' : 'of the same weights '}would bring it to ${formatNumber(limits.thin)}`,
   });
 }
 
 function priorFlag({ column, effective, prior, priorShare, growth, limits }: Population): Flag {
   const missing = (entriesAgainst(prior, limits.priorLed) - effective) / growth;
-  const more = `about ${formatEvents(missing)} more events would bring it to ${formatPercent(limits.priorLed)}, or choose a lighter prior`;
+  const more = `about ${eventsOf(missing, 'more ')} would bring it to ${formatPercent(limits.priorLed)}, or choose a lighter prior`;
   return countFlag({
     id: 'prior-led',
     column,

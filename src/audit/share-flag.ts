@@ -2,7 +2,7 @@ import type { ColumnShare } from './column-share';
 import { NO_POSTERIOR } from './column-share';
 import { answer, type Flag, type FlagId, type FlagState } from './flag';
 import { eventsToClear, eventsToSettle, probabilityBeyond, type Side } from './limits';
-import { formatEvents, formatPercent } from './wording';
+import { eventsOf, formatPercent } from './wording';
 
 export interface ShareLimit {
   id: FlagId;
@@ -37,12 +37,12 @@ function adviceOf(state: FlagState, share: ColumnShare, rule: ShareLimit): strin
   if (share.events === 0) {
     const least = eventsToClear(share.marginal, limit, side, credibility, share.growth);
     if (least === null) return `no feasible number of events can clear a limit of ${formatPercent(limit)}`;
-    return `at least ${formatEvents(least)} events in this column, none of them beyond the limit, would clear it`;
+    return `at least ${eventsOf(least)} in this column, none of them beyond the limit, would clear it`;
   }
   const settled = eventsToSettle(share.marginal, limit, side, credibility, share.growth);
   if (!settled) {
     return `${formatPercent(share.mean)} is too close to the limit of ${formatPercent(limit)} for any feasible number of events to settle it`;
   }
   const other = settled.as === 'flagged' ? 'clear it' : 'flag it';
-  return `about ${formatEvents(settled.events)} more events in this column would settle it as ${settled.as} if the share stays at ${formatPercent(share.mean)}; they would not ${other}`;
+  return `about ${eventsOf(settled.events, 'more ')} in this column would settle it as ${settled.as} if the share stays at ${formatPercent(share.mean)}; they would not ${other}`;
 }

@@ -3,7 +3,7 @@ import { countFlag } from './count-flag';
 import type { Findings } from './findings';
 import type { Flag } from './flag';
 import { rowSums } from '../tally/tally';
-import { formatCount, formatEvents, formatPercent } from './wording';
+import { countOf, eventsOf, formatPercent } from './wording';
 
 /** The flag `single-event`: the largest share of one event in a column's squared weight; 1 / n without weights. */
 export function auditSingleEvent(input: AuditInput): Findings {
@@ -28,9 +28,9 @@ function singleEventFlag(column: string, events: number, largest: number, square
     value,
     limit,
     isBeyond: value > limit,
-    evidence: `one of ${formatCount(events)} events holds ${formatPercent(value)} of the squared weight`,
+    evidence: `one of ${countOf(events, 'event')} holds ${formatPercent(value)} of the squared weight`,
     remedy: Number.isFinite(missing)
-      ? `about ${formatEvents(missing)} more events like the others would bring it to ${formatPercent(limit)}; look at that event first`
+      ? `about ${eventsOf(missing, 'more ')} like the others would bring it to ${formatPercent(limit)}; look at that event first`
       : 'no number of events brings it to zero: look at that event',
   });
 }

@@ -3,7 +3,7 @@ import { columnShares, readingOf } from './column-share';
 import type { Findings } from './findings';
 import { listMeasure } from './measure';
 import { shareFlag, type ShareLimit } from './share-flag';
-import { formatCount, formatNumber, formatShare } from './wording';
+import { countOf, formatCount, formatNumber, formatShare } from './wording';
 
 const NO_OUTSIDE = 'the reconstructed axis is a list of tags: there is no outside of it';
 
@@ -27,7 +27,7 @@ function auditSide(input: AuditInput, side: 'below' | 'above') {
     side: 'above',
     credibility: study.credibility,
     evidence: ({ mean, lower, upper, inside, events }) =>
-      `${formatShare(mean, lower, upper)} reconstructed ${where}: ${formatCount(inside)} of ${formatCount(events)} events`,
+      `${formatShare(mean, lower, upper)} reconstructed ${where}: ${formatCount(inside)} of ${countOf(events, 'event')}`,
     remedy: `more calibration events will not lower it: ${side === 'below' ? 'start the reconstructed axis lower' : 'end the reconstructed axis higher'}, or accept that this part of the column informs no bin`,
   };
   const shares = columnShares(input, [outcome]);

@@ -5,7 +5,7 @@ import type { Findings } from './findings';
 import type { Flag } from './flag';
 import { listMeasure, type Reading } from './measure';
 import { shareFlag, type ShareLimit } from './share-flag';
-import { formatCount, formatShare } from './wording';
+import { countOf, formatCount, formatShare } from './wording';
 
 export const NO_MATCHING_BINS = 'the two axes differ, so no bin matches a column';
 export const OUTER_COLUMN = 'an outer column has no matching bin';
@@ -26,7 +26,7 @@ export function auditStability(input: AuditInput): Findings {
     side: 'below',
     credibility: study.credibility,
     evidence: ({ mean, lower, upper, inside, events }) =>
-      `stability ${formatShare(mean, lower, upper)}: ${formatCount(inside)} of ${formatCount(events)} events in the window are in the matching bin`,
+      `stability ${formatShare(mean, lower, upper)}: ${formatCount(inside)} of ${countOf(events, 'event')} in the window are in the matching bin`,
     remedy: 'more calibration events will not lift it: use bins wider than the resolution here',
   };
   const { first, end } = binRange(trueAxis);

@@ -20,6 +20,17 @@ export function formatEvents(n: number): string {
   return formatCount(Math.ceil(n / step) * step);
 }
 
+/** A count with its noun, singular for one: `1 event`, `12 345 events`. */
+export function countOf(n: number, noun: string): string {
+  return `${formatCount(n)} ${noun}${n === 1 ? '' : 's'}`;
+}
+
+/** A number of events to aim for, with its noun: `about` is put before it by the caller. */
+export function eventsOf(n: number, more: '' | 'more ' = ''): string {
+  const count = formatEvents(n);
+  return `${count} ${more}event${count === '1' ? '' : 's'}`;
+}
+
 /** A number to `digits` significant digits; fewer where these say it all, more for whole numbers below ten million. */
 export function formatNumber(x: number, digits = PLAIN_DIGITS): string {
   if (!Number.isFinite(x)) return Number.isNaN(x) ? 'not a number' : `${x < 0 ? MINUS : ''}\u221e`;
