@@ -31,6 +31,12 @@ function wholeNumber(least: number) {
   };
 }
 
+function shareOption(text: string): number {
+  const value = Number(text);
+  if (!(value > 0 && value < 1)) throw new InvalidArgumentError('needs a number between 0 and 1');
+  return value;
+}
+
 const workersOption = (): Option =>
   new Option('--workers <n>', 'worker threads; the result does not depend on it')
     .argParser(wholeNumber(1))
@@ -178,6 +184,23 @@ function program(): Command {
     .action(async (first: string, second: string, options) => {
       const { compare } = await import('./commands/compare');
       await compare(first, second, options);
+    });
+
+  entasis
+    .command('plan')
+    .description('events to add to each column: for the limits of the study, for a target, or what N more would bring')
+    .argument('<bundle>', 'folder of a bundle')
+    .addOption(
+      new Option('--matrix-share <x>', "the matrix's share of the variance in every bin").argParser(shareOption),
+    )
+    .addOption(
+      new Option('--efficiency-sd <x>', 'relative sd of the efficiency of every column').argParser(shareOption),
+    )
+    .addOption(new Option('--events <n>', 'what so many more events would bring').argParser(wholeNumber(1)))
+    .addOption(jsonOption())
+    .action(async (bundle: string, options) => {
+      const { plan } = await import('./commands/plan');
+      plan(bundle, options);
     });
 
   entasis
