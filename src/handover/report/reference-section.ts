@@ -1,4 +1,6 @@
-import { formatCount, formatNumber, formatPercent } from '../../audit/wording';
+import { isAbsent } from '../../audit/measure';
+import { formatCount, formatInterval, formatNumber, formatPercent } from '../../audit/wording';
+import { binRange } from '../../study/axis';
 import { axisBands, windowBands } from './bands';
 import { ACROSS } from './cell-picture';
 import { at } from './frame';
@@ -112,12 +114,17 @@ function feedIn({ measures, analysis }: ReportSource): Markup {
 }
 
 /** Rows without a true value, where the study counts them. */
-function background({ analysis, bundle, outcome }: ReportSource): Markup | null {
+function background({ analysis, bundle, measures, outcome }: ReportSource): Markup | null {
   const { unmatched } = analysis.tally;
-  if (!unmatched) return null;
+  const content = measures.bins.background;
+  if (!unmatched || !content || isAbsent(content)) return null;
+  const { first } = binRange(analysis.recoAxis);
   const rows = bundle.outcomes.flatMap((_, k) => {
     const n = unmatched.events[k]!;
-    return n > 0 ? [[outcome(k), formatCount(n), formatNumber((unmatched.weights ?? unmatched.events)[k]!, 4)]] : [];
+    const [value, lower, upper] = [content.value, content.lower, content.upper].map((list) => list[k - first] ?? null);
+    if (n === 0 && value === null) return [];
+    const known = value !== null && lower !== null && upper !== null;
+    return [[outcome(k), formatCount(n), known ? formatInterval(value!, lower!, upper!) : '–']];
   });
-  return markup`<h3>Events without a true value</h3><p>Counted apart as background; they are in no column.</p>${tableOf(['Outcome', 'Events', 'Weight'], rows, { numeric: [1, 2] })}`;
+  return markup`<h3>Events without a true value</h3><p>Counted apart as background; they are in no column. Content: its Gamma posterior in the reconstructed bins, with the ${formatPercent(analysis.study.credibility)} interval.</p>${tableOf(['Outcome', 'Events', 'Content'], rows, { numeric: [1, 2] })}`;
 }
