@@ -168,6 +168,26 @@ describe('the whole job by keyboard alone', () => {
   });
 });
 
+describe('a window that is loaded again', () => {
+  it('keeps its session and offers the edits that were not saved', async () => {
+    writeFileSync(at('bench.csv'), eventsWithBadRows());
+    writeFileSync(at('keys.study.json'), JSON.stringify(studyOfKeys()));
+    const page = await opened();
+    await button(page, 'Open a study').click();
+    await button(page, 'keys.study.json').click();
+    await page
+      .getByText(/read 3.004 = /)
+      .first()
+      .waitFor();
+    await page.getByLabel('Title of the study').fill('Edited by keys');
+    await page.getByLabel('Title of the study').press('Enter');
+    await page.waitForResponse((response) => response.url().endsWith('/call/keepDraft'));
+    await page.reload();
+    await button(page, 'Continue it').click();
+    await expect.poll(() => page.getByLabel('Title of the study').inputValue()).toBe('Edited by keys');
+  });
+});
+
 async function expectRole(page: Page, field: string, role: string): Promise<void> {
   const select = page.getByRole('combobox', { name: `Role of ${field}` });
   await select.waitFor();

@@ -356,6 +356,14 @@ describe('the deeper audit', () => {
     expect(notices.some((notice) => notice.kind === 'progress' && notice.phase === 'Rehearsing')).toBe(true);
   });
 
+  it('goes on after work in its worker was cancelled', async () => {
+    const rehearsing = answer('rehearse', { ...here(), repetitions: 1000, job: 'endless' });
+    await waitFor(() => notices.some((notice) => notice.kind === 'progress' && notice.job === 'endless'));
+    expect(await value('cancel', { job: 'endless' })).toBe(true);
+    expect(await rehearsing).toMatchObject({ ok: false, code: 'cancelled' });
+    expect((await value('posterior', here())).columns).toBe(12);
+  });
+
   it('counts the replicas needed for a number of digits', async () => {
     const one = await value('replicasNeeded', { ...here(), digits: 1, job: 'digits' });
     expect(one.replicas).toBeGreaterThanOrEqual(20_000);
@@ -460,5 +468,5 @@ describe('a window with a small budget of memory', () => {
 });
 
 async function waitFor(holds: () => boolean): Promise<void> {
-  while (!holds()) await new Promise((resolve) => setTimeout(resolve, 5));
+  await expect.poll(holds, { timeout: 20_000, interval: 5 }).toBe(true);
 }
