@@ -1,16 +1,17 @@
 import { closeSync, existsSync, readFileSync, readdirSync, statSync } from 'node:fs';
 import { join, relative, sep } from 'node:path';
+import { modelOf, type Model } from '../src/handover/analyse';
+import { bundleTally } from '../src/handover/bundle-tally';
 import { parseManifest, type Manifest } from '../src/handover/manifest';
-import { readNpy, readNpyHeader, openForReading } from '../src/handover/npy';
+import { openForReading, readNpyHeader } from '../src/handover/npy';
+import { openBundle, readCells, type Bundle } from '../src/handover/open-bundle';
 import { MANIFEST, REPLICAS } from '../src/handover/write-bundle';
-import { posteriorOf } from '../src/posterior/posterior';
-import { priorOf } from '../src/posterior/prior';
 import { summarise } from '../src/posterior/summary';
 import { studyFingerprint } from '../src/study/fingerprint';
 import { InputError } from '../src/study/input-error';
-import { parseStudyText, resolveAxis, type Study } from '../src/study/study';
+import type { Study } from '../src/study/study';
 import { ledgerBalances } from '../src/tally/ledger';
-import type { Cells } from '../src/tally/tally';
+import type { Tally } from '../src/tally/tally';
 import { checkEnsemble } from './draw-ensemble';
 import type { Progress } from './progress';
 import { hashFile } from './workers/hash-file';
@@ -47,9 +48,10 @@ export async function verifyBundle(bundle: string, options: VerifyOptions): Prom
   const readable = checkArrays(bundle, manifest);
   checks.push(readable);
   if (readable.holds) {
-    const study = readStudy(bundle);
-    checks.push(checkStudy(study, manifest), ...checkTally(bundle, manifest));
-    checks.push(...(await checkAgain(bundle, manifest, study, options)));
+    const opened = openBundle(bundle);
+    const tally = bundleTally(opened);
+    checks.push(checkStudy(opened.study, manifest), ...checkTally(tally));
+    checks.push(...(await checkAgain(opened, modelOf(opened.study, tally), options)));
   }
   return { holds: checks.every(({ holds }) => holds), checks };
 }
@@ -126,11 +128,6 @@ function sameShape(a: readonly number[], b: readonly number[]): boolean {
   return a.length === b.length && a.every((n, i) => n === b[i]);
 }
 
-function readStudy(bundle: string): Study {
-  const path = join(bundle, 'study.json');
-  return parseStudyText(readFileSync(path, 'utf8'), path);
-}
-
 function checkStudy(study: Study, manifest: Manifest): Check {
   const holds =
     studyFingerprint(study) === manifest.study.fingerprint &&
@@ -143,32 +140,26 @@ function checkStudy(study: Study, manifest: Manifest): Check {
   };
 }
 
-function checkTally(bundle: string, manifest: Manifest): Check[] {
-  const read = (name: string): Float64Array => readNpy(join(bundle, 'tally', `${name}.npy`)).values;
-  const counts = read('counts');
+/** The laws of a tally: every event is in one cell, and the halves and the runs of a column sum to it. */
+function checkTally({ cells, halves, runs, ledger, outcomeNames }: Tally): Check[] {
+  const counts = cells.events;
+  const outcomes = outcomeNames.length;
   const total = counts.reduce((a, b) => a + b, 0);
-  const outcomes = manifest.outcomes.length;
-  const halves = read('halves');
-  const bySum = (parts: Float64Array[]): boolean =>
-    counts.every((n, i) => parts.reduce((sum, part) => sum + part[i]!, 0) === n);
   const half = (h: number): Float64Array =>
-    counts.map((_, i) => halves[(Math.floor(i / outcomes) * 2 + h) * outcomes + (i % outcomes)]!);
+    counts.map((_, i) => halves.events[(Math.floor(i / outcomes) * 2 + h) * outcomes + (i % outcomes)]!);
+  const sumUp = (parts: Float64Array[]): boolean =>
+    counts.every((n, i) => parts.reduce((sum, part) => sum + part[i]!, 0) === n);
   const checks: Check[] = [
-    {
-      what: 'the counts sum to the events tallied',
-      holds: total === manifest.ledger.tallied,
-      detail: `${total} events`,
-    },
+    { what: 'the counts sum to the events tallied', holds: total === ledger.tallied, detail: `${total} events` },
     {
       what: 'the halves of each column sum to its counts',
-      holds: bySum([half(0), half(1)]),
+      holds: sumUp([half(0), half(1)]),
       detail: `${counts.length} cells`,
     },
   ];
-  if (manifest.runs) {
-    const runs = read('runs');
-    const parts = manifest.runs.map((_, r) => runs.subarray(r * counts.length, (r + 1) * counts.length));
-    checks.push({ what: 'the runs sum to the counts', holds: bySum(parts), detail: `${parts.length} runs` });
+  if (runs) {
+    const parts = runs.labels.map((_, r) => runs.cells.events.subarray(r * counts.length, (r + 1) * counts.length));
+    checks.push({ what: 'the runs sum to the counts', holds: sumUp(parts), detail: `${parts.length} runs` });
   }
   return checks;
 }
@@ -176,87 +167,44 @@ function checkTally(bundle: string, manifest: Manifest): Check[] {
 /** A summary computed again on another machine may differ in the last digits of its special functions, no more. */
 const SUMMARY_TOLERANCE = 1e-9;
 
-async function checkAgain(bundle: string, manifest: Manifest, study: Study, options: VerifyOptions): Promise<Check[]> {
-  const tallied = readCellsOf(bundle, manifest);
-  const trueAxis = resolveAxis(study.axes.true);
-  const recoAxis = resolveAxis(study.axes.reconstructed);
-  const prior = priorOf(study.prior, { ...manifestTally(manifest), cells: tallied }, trueAxis, recoAxis);
-  const posterior = posteriorOf(tallied, prior);
-  const stored = (name: string): Float64Array => readNpy(join(bundle, 'posterior', `${name}.npy`)).values;
-  const summary = summarise(posterior, tallied.events, study.credibility);
-  const compare = (what: string, pairs: [string, Float64Array][], tolerance: number): Check => {
-    for (const [name, again] of pairs) {
-      const found = stored(name);
-      const i = again.findIndex((x, at) => !(Math.abs(x - found[at]!) <= tolerance * Math.max(1, Math.abs(x))));
-      if (i >= 0)
-        return {
-          what,
-          holds: false,
-          detail: `posterior/${name}.npy: ${place(manifest, i)} is ${found[i]}, computed again ${again[i]}`,
-        };
-    }
-    return { what, holds: true, detail: `${posterior.columns} columns` };
-  };
+async function checkAgain(bundle: Bundle, model: Model, options: VerifyOptions): Promise<Check[]> {
+  const { posterior, tally, study } = model;
+  const { mean, sd, lower, upper } = summarise(posterior, tally.cells.events, study.credibility);
   const shapes: [string, Float64Array][] = [['shape', posterior.shape]];
   if (posterior.scale) shapes.push(['scale', posterior.scale]);
-  const { mean, sd, lower, upper } = summary;
+  const summary = Object.entries({ mean, sd, lower, upper });
   return [
-    compare('the posterior follows from the tally', shapes, 0),
-    compare(
-      'means, deviations and intervals follow from it',
-      Object.entries({ mean, sd, lower, upper }),
-      SUMMARY_TOLERANCE,
-    ),
-    await checkReplicas(bundle, manifest, posterior, options),
+    checkPosterior(bundle, 'the posterior follows from the tally', shapes, 0),
+    checkPosterior(bundle, 'means, deviations and intervals follow from it', summary, SUMMARY_TOLERANCE),
+    await checkReplicas(bundle, model, options),
   ];
 }
 
-async function checkReplicas(
-  bundle: string,
-  manifest: Manifest,
-  parameters: ReturnType<typeof posteriorOf>,
-  options: VerifyOptions,
-): Promise<Check> {
-  const path = join(bundle, REPLICAS);
-  const file = openForReading(path, path);
-  const { start } = readNpyHeader(file, path);
-  closeSync(file);
+function checkPosterior(bundle: Bundle, what: string, again: [string, Float64Array][], tolerance: number): Check {
+  for (const [name, values] of again) {
+    const found = readCells(bundle, `posterior/${name}`);
+    const i = values.findIndex((x, at) => !(Math.abs(x - found[at]!) <= tolerance * Math.max(1, Math.abs(x))));
+    if (i < 0) continue;
+    const detail = `posterior/${name}.npy: ${cellName(bundle, i)} is ${found[i]}, computed again ${values[i]}`;
+    return { what, holds: false, detail };
+  }
+  return { what, holds: true, detail: `${bundle.columns.length} columns` };
+}
+
+async function checkReplicas(bundle: Bundle, { posterior }: Model, options: VerifyOptions): Promise<Check> {
+  const { manifest, outcomes } = bundle;
   const { seed, replicas } = manifest;
-  const mismatch = await checkEnsemble({ ...options, parameters, seed, replicas, path, place: path }, start);
+  const path = join(bundle.folder, REPLICAS);
+  const { start } = bundle.arrays.get('replicas')!;
+  const drawing = { ...options, parameters: posterior, seed, replicas, path, place: path };
+  const mismatch = await checkEnsemble(drawing, start);
   const what = 'every replica is what seed and tally give, to the bit';
   if (!mismatch) return { what, holds: true, detail: `${replicas} replicas drawn again` };
   const { replica, column, outcome, found, expected } = mismatch;
-  const cell = `replica ${replica}, column ${manifest.columns[column]}, outcome ${manifest.outcomes[outcome]}`;
+  const cell = `replica ${replica}, ${cellName(bundle, column * outcomes.length + outcome)}`;
   return { what, holds: false, detail: `${cell} is ${found}, drawn again ${expected}` };
 }
 
-function readCellsOf(bundle: string, manifest: Manifest): Cells {
-  const read = (name: string): Float64Array => readNpy(join(bundle, 'tally', `${name}.npy`)).values;
-  const weighted = manifest.weighted;
-  return {
-    events: read('counts'),
-    weights: weighted ? read('weights') : null,
-    squares: weighted ? read('squares') : null,
-  };
-}
-
-function manifestTally({ columns, outcomes, weighted, ledger, duplicates, trueRange }: Manifest) {
-  const none = { events: new Float64Array(0), weights: null, squares: null };
-  return {
-    columnNames: columns,
-    outcomeNames: outcomes,
-    weighted,
-    ledger,
-    duplicates,
-    trueRange,
-    halves: none,
-    runs: null,
-    largestSquare: null,
-    unmatched: null,
-  };
-}
-
-function place(manifest: Manifest, i: number): string {
-  const outcomes = manifest.outcomes.length;
-  return `column ${manifest.columns[Math.floor(i / outcomes)]}, outcome ${manifest.outcomes[i % outcomes]}`;
+function cellName({ columns, outcomes }: Bundle, i: number): string {
+  return `column ${columns[Math.floor(i / outcomes.length)]}, outcome ${outcomes[i % outcomes.length]}`;
 }
