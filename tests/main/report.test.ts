@@ -142,18 +142,21 @@ describe('the report of the demonstration', () => {
 });
 
 describe('the report as PDF', () => {
-  it.skipIf(!BROWSER)(`has A4 pages, whole, and leaves nothing beside it${BROWSER ? '' : ' (no browser here)'}`, async () => {
-    const pdf = folder.path('gallery.pdf');
-    const run = await entasis('report', BUNDLE, '--pdf', '--out', pdf);
-    expect(run.status, run.err).toBe(0);
-    const bytes = readFileSync(pdf).toString('latin1');
-    expect(bytes).toMatch(/^%PDF-1\.\d/);
-    expect(bytes.trimEnd()).toMatch(/%%EOF$/);
-    // A4 is 210 mm x 297 mm (ISO 216), 595.28 by 841.89 points.
-    const [, width, height] = /\/MediaBox \[0 0 ([\d.]+) ([\d.]+)\]/.exec(bytes)!;
-    expect([Math.round(Number(width)), Math.round(Number(height))]).toEqual([595, 842]);
-    expect(readdirSync(folder.path('.')).filter((name) => name.startsWith('.'))).toEqual([]);
-  });
+  it.skipIf(!BROWSER)(
+    `has A4 pages, whole, and leaves nothing beside it${BROWSER ? '' : ' (no browser here)'}`,
+    async () => {
+      const pdf = folder.path('gallery.pdf');
+      const run = await entasis('report', BUNDLE, '--pdf', '--out', pdf);
+      expect(run.status, run.err).toBe(0);
+      const bytes = readFileSync(pdf).toString('latin1');
+      expect(bytes).toMatch(/^%PDF-1\.\d/);
+      expect(bytes.trimEnd()).toMatch(/%%EOF$/);
+      // A4 is 210 mm x 297 mm (ISO 216), 595.28 by 841.89 points.
+      const [, width, height] = /\/MediaBox \[0 0 ([\d.]+) ([\d.]+)\]/.exec(bytes)!;
+      expect([Math.round(Number(width)), Math.round(Number(height))]).toEqual([595, 842]);
+      expect(readdirSync(folder.path('.')).filter((name) => name.startsWith('.'))).toEqual([]);
+    },
+  );
 
   it('is refused in one line where no browser is here, and leaves nothing behind', async () => {
     const before = { PATH: process.env['PATH'], ENTASIS_BROWSER: process.env['ENTASIS_BROWSER'] };

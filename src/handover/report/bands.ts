@@ -41,8 +41,19 @@ export function evenBands(
   // Ends and starts that meet are the same number.
   const edges = Float64Array.from({ length: labels.length + 1 }, (_, i) => start + i * step);
   const every = Math.ceil(ROOM[side].tag / step);
-  const ticks = labels.flatMap((text, i) => (i % every === 0 ? [{ at: start + (i + 0.5) * step, text }] : []));
+  const ticks = labels.flatMap((text, i) =>
+    i % every === 0 ? [{ at: start + (i + 0.5) * step, text: shortened(text, side, every * step) }] : [],
+  );
   return { length, from: edges.subarray(0, -1), to: edges.subarray(1), ticks, title };
+}
+
+/** Letters of a label beside a picture, and the width of one below it. */
+const BESIDE = 8;
+const LETTER = 6;
+
+function shortened(text: string, side: Side, room: number): string {
+  const longest = side === 'up' ? BESIDE : Math.floor(room / LETTER);
+  return text.length > longest ? `${text.slice(0, longest - 1)}…` : text;
 }
 
 function numericBands(

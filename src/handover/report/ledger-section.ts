@@ -12,7 +12,7 @@ export const ledgerSection: Section = { id: 'ledger', title: 'The ledger', body:
 function ledger({ bundle }: ReportSource): Markup {
   const { ledger, duplicates } = bundle.manifest;
   const reasons = Object.entries(ledger.reasons).sort(([, a], [, b]) => b - a);
-  return markup`<p>Every row that was read is in exactly one place. Both sides of the account agree.</p>
+  return markup`<p>Every row that was read is in exactly one place. Both sides of the account agree. File by file: <a href="#provenance">Hashes and seed</a>.</p>
 ${balance(ledger)}${figure(bar(ledger), legendOf(PLACES.filter(({ of }) => of(ledger) > 0).map(({ fill, text }) => ({ fill, text }))))}
 ${
   reasons.length === 0
@@ -23,8 +23,7 @@ ${
         { numeric: [1] },
       )
 }
-${clamped(ledger)}${duplicates ? markup`<p>${duplicateWords(duplicates)}</p>` : null}
-<p class="quiet">File by file: <a href="#provenance">Hashes and seed</a>.</p>`;
+${clamped(ledger)}${duplicates ? markup`<p>${duplicateWords(duplicates)}</p>` : null}`;
 }
 
 const PLACES: { text: string; fill: string; of: (ledger: Ledger) => number }[] = [

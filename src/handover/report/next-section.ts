@@ -55,10 +55,16 @@ function columnPlan(source: ReportSource): Markup {
 ${tableOf(head, rows, { numeric: [1, 2, 3, 4, 5, 6], kind: 'plain summed' })}`;
 }
 
+/** Answers listed that cannot be settled by as many events as there are; the others are counted. */
+const MOST_PRICES = 30;
+
 function prices(source: ReportSource): Markup | null {
   const { settlements } = source.plan;
   if (settlements.length === 0) return null;
-  const rows = settlements.map(({ flag, plan, isAffordable }) => [
+  const affordable = settlements.filter(({ isAffordable }) => isAffordable).length;
+  const shown = settlements.slice(0, Math.max(affordable, MOST_PRICES));
+  const left = settlements.length - shown.length;
+  const rows = shown.map(({ flag, plan, isAffordable }) => [
     flagName(flag.id, 'undecided'),
     placeInWords(source, flag),
     plan.total === null ? '–' : formatEvents(plan.total),
@@ -70,7 +76,7 @@ function prices(source: ReportSource): Markup | null {
   ]);
   return markup`<h3>The price of every undecided answer</h3>
 <p>Events after which the answer is expected to be settled, whichever way, in 95 of 100 campaigns under the present posterior.</p>
-${tableOf(['Answer', 'Where', 'Events to add', ''], rows, { numeric: [2] })}`;
+${tableOf(['Answer', 'Where', 'Events to add', ''], rows, { numeric: [2] })}${left > 0 ? markup`<p class="quiet">And ${formatCount(left)} more that take more than the whole calibration or cannot be settled; <code>entasis plan</code> lists all.</p>` : null}`;
 }
 
 function outlook({ again, events }: MeasurePlan): Markup | null {

@@ -68,7 +68,7 @@ svg .limit { stroke: var(--ink); stroke-width: 0.8; stroke-dasharray: 5 3; fill:
   :root { --paper: #fff; }
   html { background: none; font-size: 9.4pt; }
   body { max-width: none; margin: 0; padding: 0; }
-  #matrix, #flags, #sign-off { break-before: page; }
+  #sign-off { break-before: page; }
   .summary { break-after: page; font-size: 8.8pt; }
   .summary h2 { margin-top: 3mm; }
   .summary table { font-size: 8pt; line-height: 1.25; }

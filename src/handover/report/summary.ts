@@ -143,6 +143,12 @@ function neededEvents({ plan, column }: ReportSource): Markup {
     .filter((j) => plan.needed[j]! > 0)
     .sort((a, b) => plan.needed[b]! - plan.needed[a]!);
   if (wanted.length === 0) return markup`<b>No more calibration events are needed</b> for the limits of this study.`;
+  const purposes = [
+    ...(sumOf(plan.populate) > 0 ? ['populate the columns that are empty, thin or led by the prior'] : []),
+    ...(sumOf(plan.influence) > 0
+      ? ['keep the matrix from limiting any reconstructed bin under the reference spectrum']
+      : []),
+  ];
   const parts = wanted.slice(0, MOST_COLUMNS).map((j) => `${column(j)}: ${formatEvents(plan.needed[j]!)}`);
   const left = wanted.slice(MOST_COLUMNS);
   if (left.length > 0) {
@@ -150,7 +156,7 @@ function neededEvents({ plan, column }: ReportSource): Markup {
       `${left.length} more ${plural(left.length, 'column')}: ${formatEvents(sumOf(left.map((j) => plan.needed[j]!)))}`,
     );
   }
-  return markup`<b>${formatEvents(sumOf(plan.needed))} more calibration events</b> (there are ${formatCount(sumOf(plan.events))}) populate the columns that are thin or led by the prior, and keep the matrix from limiting any reconstructed bin under the reference spectrum: ${parts.join('; ')}.`;
+  return markup`<b>${formatEvents(sumOf(plan.needed))} more calibration events</b> (there are ${formatCount(sumOf(plan.events))}) ${purposes.join(', and ')}: ${parts.join('; ')}.`;
 }
 
 function settling({ settlements, needed, all }: MeasurePlan): string {
