@@ -1,6 +1,6 @@
 import './bench/without-eval';
 import { mount } from 'svelte';
-import { connect } from '../main/page-bridge';
+import { connect } from '../main/page/page-bridge';
 import './theme/tokens.css';
 import './theme/base.css';
 import Unreachable from './Unreachable.svelte';

@@ -42,6 +42,7 @@ export class Results {
   /** The last matrix that was known whole: what the pictures show while the next one is on its way. */
   matrix = $state.raw<KnownMatrix | null>(null);
   #readAsked = $state('');
+  #looked = '';
 
   /** The checked study, `null` where it is not valid. */
   readonly study = $derived.by(() => this.file.checked.study);
@@ -65,6 +66,7 @@ export class Results {
     this.tally = new Latest((argument) => bridge.call('tally', argument));
     this.posterior = new Latest((argument) => bridge.call('posterior', argument));
     this.audit = new Latest((argument) => bridge.call('audit', argument));
+    $effect(() => this.#followFiles());
     $effect(() => this.#follow());
     $effect(() => this.#followTally());
     $effect(() => this.#followPosterior());
@@ -82,7 +84,7 @@ export class Results {
   /** Another study is open: nothing known of the one before is true of it. */
   forget(): void {
     for (const latest of [this.events, this.tally, this.posterior, this.audit]) latest.forget();
-    this.#readAsked = '';
+    this.#readAsked = this.#looked = '';
     this.matrix = null;
     this.files = [];
     this.problems = [];
@@ -91,14 +93,18 @@ export class Results {
 
   /** Finds the files of the patterns, and looks into those not looked into yet. */
   async look(patterns: string[], folder: string): Promise<void> {
+    const asked = (this.#looked = JSON.stringify([patterns, folder]));
     const answer = patterns.length > 0 ? await this.bridge.call('chooseEvents', { patterns, folder }) : null;
+    if (asked !== this.#looked) return;
     if (answer && !answer.ok) {
       this.problems = [answer];
       return;
     }
     this.files = answer?.value.files ?? [];
     this.problems = answer?.value.problems ?? [];
-    for (const { path } of this.files) if (!this.inspections.has(path)) await this.inspect(path);
+    for (const { path } of this.files) {
+      if (asked === this.#looked && !this.inspections.has(path)) await this.inspect(path);
+    }
   }
 
   async inspect(path: string): Promise<void> {
@@ -109,6 +115,13 @@ export class Results {
 
   #question() {
     return { study: this.study!, folder: this.file.folder };
+  }
+
+  /** Undo, redo and a save elsewhere change the files too. */
+  #followFiles(): void {
+    const { files } = this.file.document.events;
+    if (JSON.stringify([files, this.file.folder]) === this.#looked) return;
+    untrack(() => void this.look(files, this.file.folder));
   }
 
   /** Reads again when what was read no longer answers the study, where that is quick. */

@@ -21,26 +21,80 @@ const CARRIED = [
 const PNG_SCALE = 3;
 const SVG = 'http://www.w3.org/2000/svg';
 
+/** What a saved picture is made of. */
+export interface FigureParts {
+  /** Holds the drawings. */
+  frame: HTMLElement;
+  /** Keys to colours beside the title: each a drawing and a text. */
+  legends: Iterable<HTMLElement>;
+  title: string;
+  description: string;
+}
+
+export interface SavedFigure {
+  svg: string;
+  width: number;
+  height: number;
+}
+
+/** Above the picture: the title and the legends. */
+const HEAD = 36;
+const HEAD_TEXT = 16;
+const MARGIN = 12;
+
 /**
- * One SVG document of every drawing inside `frame`: canvases become images, SVG elements keep their computed style.
- * The background is that of the page.
+ * One SVG document of the title, the legends and every drawing inside the frame: canvases become images, SVG elements
+ * keep their computed style. The background is that of the page.
  */
-export function svgText(frame: HTMLElement, title: string, description: string): string {
+export function savedFigure({ frame, legends, title, description }: FigureParts): SavedFigure {
   const box = frame.getBoundingClientRect();
-  const root = document.createElementNS(SVG, 'svg');
-  set(root, { xmlns: SVG, width: box.width, height: box.height, viewBox: `0 0 ${box.width} ${box.height}` });
+  const [width, height] = [box.width + 2 * MARGIN, box.height + HEAD + 2 * MARGIN];
+  const style = getComputedStyle(frame);
+  const root = set(document.createElementNS(SVG, 'svg'), {
+    xmlns: SVG,
+    width,
+    height,
+    viewBox: `0 0 ${width} ${height}`,
+  });
   root.append(words('title', title), words('desc', description));
-  const paper = getComputedStyle(frame).getPropertyValue('--paper');
-  root.append(set(document.createElementNS(SVG, 'rect'), { width: box.width, height: box.height, fill: paper }));
+  root.append(set(document.createElementNS(SVG, 'rect'), { width, height, fill: style.getPropertyValue('--paper') }));
+  root.append(headOf(title, legends, style));
+  const body = set(document.createElementNS(SVG, 'g'), { transform: `translate(${MARGIN},${HEAD + MARGIN})` });
   for (const drawing of frame.querySelectorAll<HTMLCanvasElement | SVGSVGElement>('canvas, svg')) {
     if (drawing.parentElement?.closest('svg')) continue;
-    root.append(drawing instanceof HTMLCanvasElement ? imageOf(drawing, box) : groupOf(drawing, box));
+    body.append(drawing instanceof HTMLCanvasElement ? imageOf(drawing, box) : groupOf(drawing, box));
   }
-  return new XMLSerializer().serializeToString(root);
+  root.append(body);
+  return { svg: new XMLSerializer().serializeToString(root), width, height };
+}
+
+/** The title, and behind it the legends one after another. */
+function headOf(title: string, legends: Iterable<HTMLElement>, style: CSSStyleDeclaration): SVGElement {
+  const head = set(document.createElementNS(SVG, 'g'), { transform: `translate(${MARGIN},${MARGIN})` });
+  const text = words('text', title);
+  set(text, { y: HEAD_TEXT, fill: style.color, 'font-family': style.fontFamily, 'font-size': style.fontSize });
+  head.append(set(text, { 'font-weight': 600 }));
+  let x = title.length * (Number.parseFloat(style.fontSize) * 0.65) + 2 * MARGIN;
+  for (const legend of legends) {
+    const box = legend.getBoundingClientRect();
+    const group = set(document.createElementNS(SVG, 'g'), { transform: `translate(${x},0)` });
+    for (const svg of legend.querySelectorAll<SVGSVGElement>('svg')) group.append(groupOf(svg, box));
+    for (const span of legend.querySelectorAll<HTMLElement>('span')) group.append(labelOf(span, box));
+    head.append(group);
+    x += box.width + MARGIN;
+  }
+  return head;
+}
+
+function labelOf(span: HTMLElement, frame: DOMRect): SVGElement {
+  const box = span.getBoundingClientRect();
+  const { color, fontFamily, fontSize } = getComputedStyle(span);
+  const text = words('text', span.textContent ?? '');
+  return set(text, { x: box.x - frame.x, y: HEAD_TEXT, fill: color, 'font-family': fontFamily, 'font-size': fontSize });
 }
 
 /** The same picture as a PNG. */
-export async function pngBytes(svg: string, width: number, height: number): Promise<Uint8Array<ArrayBuffer>> {
+export async function pngBytes({ svg, width, height }: SavedFigure): Promise<Uint8Array<ArrayBuffer>> {
   const url = URL.createObjectURL(new Blob([svg], { type: 'image/svg+xml' }));
   try {
     const image = new Image();
@@ -88,7 +142,7 @@ function carry(element: Element, name: string, value: string): void {
     element.setAttribute(name, value);
 }
 
-function words(name: 'title' | 'desc', text: string): SVGElement {
+function words(name: 'title' | 'desc' | 'text', text: string): SVGElement {
   const element = document.createElementNS(SVG, name);
   element.textContent = text;
   return element;

@@ -1,4 +1,4 @@
-import { scaleLinear, scaleLog } from 'd3';
+import { scaleLinear } from 'd3';
 import { exact, superscript, THIN, TIMES, value } from '../words/number';
 
 export interface Tick {
@@ -9,15 +9,29 @@ export interface Tick {
 
 /** A scale is read from two places at least; three, where there is room for three. */
 const FEWEST = 3;
-const DECADE_DIGITS = [2, 3, 4, 5, 6, 7, 8, 9];
-/** Fewer decades than this carry labels between the powers of ten too. */
-const FEW_DECADES = 1.5;
+const DIGITS = [1, 2, 3, 4, 5, 6, 7, 8, 9];
+const ROUND = [1, 2, 5];
+/** A log axis of fewer decades than this is read by even steps: it has no two powers of ten. */
+const NARROW = 0.7;
 
 /** About `room / spacing` ticks over `[from, to]`, with labels that tell them apart. */
 export function ticksOf(kind: 'linear' | 'log', from: number, to: number, room: number, spacing: number): Tick[] {
   const most = Math.max(2, Math.floor(room / spacing));
   if (!(to > from)) return [{ value: from, text: value(from) }];
   return kind === 'log' && from > 0 ? logTicks(from, to, most) : linearTicks(from, to, most);
+}
+
+/** About so many pixels a character of a label takes, and two labels keep apart. */
+const CHARACTER = 8;
+const APART = 10;
+
+/** Ticks of an axis that runs across: as many as their labels leave room for beside one another. */
+export function ticksAcross(kind: 'linear' | 'log', from: number, to: number, room: number, spacing: number): Tick[] {
+  const ticks = ticksOf(kind, from, to, room, spacing);
+  const longest = Math.max(...ticks.map(({ text }) => text.length));
+  const needed = longest * CHARACTER + APART;
+  const named = ticks.filter(({ text }) => text !== '').length;
+  return needed <= spacing || needed * named <= room ? ticks : ticksOf(kind, from, to, room, needed);
 }
 
 function linearTicks(from: number, to: number, most: number): Tick[] {
@@ -30,35 +44,26 @@ function linearTicks(from: number, to: number, most: number): Tick[] {
 
 function logTicks(from: number, to: number, most: number): Tick[] {
   const decades = Math.log10(to / from);
-  if (decades < FEW_DECADES) return fewDecades(from, to, most);
+  if (decades < NARROW) return linearTicks(from, to, most);
   const every = Math.ceil(decades / most);
+  // Where there is room the ticks at 2 and 5 are named too.
+  const named = ROUND.length * decades <= most ? ROUND : [1];
   const ticks: Tick[] = [];
   for (let e = Math.ceil(Math.log10(from) - 1); e <= Math.log10(to); e++) {
-    const power = Number(`1e${e}`);
-    if (power >= from && power <= to) ticks.push({ value: power, text: e % every === 0 ? powerText(e) : '' });
-    if (every === 1) for (const d of DECADE_DIGITS) pushMinor(ticks, d * power, from, to);
+    for (const digit of every === 1 ? DIGITS : [1]) {
+      const value = Number(`${digit}e${e}`);
+      const text = named.includes(digit) && e % every === 0 ? logText(digit, e) : '';
+      if (value >= from && value <= to) ticks.push({ value, text });
+    }
   }
   return ticks;
 }
 
-function fewDecades(from: number, to: number, most: number): Tick[] {
-  const ticks = scaleLog([from, to], [0, 1]).ticks(most);
-  const keep = thinned(ticks, most);
-  return ticks.map((v) => ({ value: v, text: keep.has(v) ? tickText(v) : '' }));
-}
-
-function thinned(values: number[], most: number): Set<number> {
-  const every = Math.ceil(values.length / most);
-  return new Set(values.filter((_, i) => i % every === 0));
-}
-
-function pushMinor(ticks: Tick[], v: number, from: number, to: number): void {
-  if (v >= from && v <= to) ticks.push({ value: v, text: '' });
-}
-
-/** 0.001 to 10 000 in full, other powers of ten as such. */
-function powerText(exponent: number): string {
-  return exponent >= -3 && exponent <= 4 ? exact(10 ** exponent) : `10${superscript(exponent)}`;
+/** 0.001 to 50 000 in full, other powers of ten as such. */
+function logText(digit: number, exponent: number): string {
+  const value = Number(`${digit}e${exponent}`);
+  if (exponent >= -3 && exponent <= 4) return exact(value);
+  return digit === 1 ? `10${superscript(exponent)}` : tickText(value);
 }
 
 /** A tick is a short decimal: its own digits, freed of binary noise, as a power of ten where it is long. */

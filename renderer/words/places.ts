@@ -7,7 +7,9 @@ export function bandTitle(axis: Axis, i: number): string {
   const { first, end } = binRange(axis);
   if (i < first) return `below ${withUnit(exact(axis.edges[0]!), axis.unit)}`;
   if (i >= end) return `above ${withUnit(exact(axis.edges.at(-1)!), axis.unit)}`;
-  return withUnit(`${short(axis.edges[i - first]!)} to ${short(axis.edges[i - first + 1]!)}`, axis.unit);
+  const lo = axis.edges[i - first]!;
+  const hi = axis.edges[i - first + 1]!;
+  return withUnit(`${short(lo, hi - lo)} to ${short(hi, hi - lo)}`, axis.unit);
 }
 
 /** An outcome in words; the one past the axis' own is "lost". */
@@ -27,7 +29,13 @@ export function bandOrder(axis: Axis, lost: boolean): number[] {
   return lost ? [inside.length, ...inside] : inside;
 }
 
-/** An edge without the digits that only binary arithmetic put there. */
-export function short(edge: number): string {
-  return exact(Number(edge.toPrecision(6)));
+/** An edge of more characters than this was computed, not chosen. */
+const CHOSEN = 7;
+
+/** An edge as a name: in full where it is a short number, else to a hundredth of its bin or better. */
+export function short(edge: number, width: number): string {
+  const clean = Number(edge.toPrecision(12));
+  if (String(clean).length <= CHOSEN) return exact(clean);
+  const decimals = 2 - Math.floor(Math.log10(width));
+  return exact(Number(clean.toFixed(Math.min(20, Math.max(0, decimals)))));
 }

@@ -1,6 +1,6 @@
 import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
-import { domainOf, ticksOf, tickText } from '../../renderer/draw/ticks';
+import { domainOf, ticksAcross, ticksOf, tickText } from '../../renderer/draw/ticks';
 
 describe('ticks', () => {
   it('stand inside the range, each with a label of its own', () => {
@@ -30,7 +30,7 @@ describe('ticks', () => {
 
   it('name the powers of ten of a log axis and leave the others unnamed', () => {
     const ticks = ticksOf('log', 0.5, 2000, 400, 60);
-    expect(ticks.filter(({ text }) => text !== '').map(({ value }) => value)).toEqual([1, 10, 100, 1000]);
+    expect(ticks.filter(({ text }) => text !== '').map(({ text }) => text)).toEqual(['1', '10', '100', '1\u202f000']);
     expect(ticks.find(({ value }) => value === 20)?.text).toBe('');
     expect(ticks.find(({ value }) => value === 0.5)?.text).toBe('');
   });
@@ -41,9 +41,23 @@ describe('ticks', () => {
     expect(named.length).toBeGreaterThanOrEqual(2);
   });
 
-  it('name numbers between the powers where a log axis spans less than one and a half decades', () => {
+  it('name 2 and 5 too where a log axis has room for them', () => {
+    const named = (room: number) => ticksOf('log', 0.5, 20, room, 60).filter(({ text }) => text !== '');
+    expect(named(400).map(({ value }) => value)).toEqual([0.5, 1, 2, 5, 10, 20]);
+    expect(named(200).map(({ value }) => value)).toEqual([1, 10]);
+  });
+
+  it('step evenly on a log axis of less than 0.7 decades', () => {
     const named = ticksOf('log', 20, 90, 400, 60).filter(({ text }) => text !== '');
-    expect(named.length).toBeGreaterThanOrEqual(2);
+    const steps = named.slice(1).map(({ value }, i) => value - named[i]!.value);
+    expect(new Set(steps).size).toBe(1);
+    expect(ticksOf('log', 20, 110, 400, 60).some(({ text }) => text === '')).toBe(true);
+  });
+
+  it('leave labels that run across room beside one another', () => {
+    const ticks = ticksAcross('linear', -1e-12, 1e-12, 264, 44);
+    const width = Math.max(...ticks.map(({ text }) => text.length)) * 8 + 10;
+    expect(ticks.length * width).toBeLessThanOrEqual(264 + width);
   });
 
   it('write binary noise as the decimal that was meant', () => {
