@@ -11,16 +11,16 @@ import {
   shell,
 } from 'electron';
 import { join, resolve } from 'node:path';
-import { CALL, DROP, NOTICE } from './channels';
-import { keepsakesFolder } from './keepsakes';
-import { denyPermissions, isOwnPage, lockPage } from './locked-page';
-import { nativeDialog } from './native-dialog';
-import { PAGE, PRIVILEGES, servePage } from './page-scheme';
-import { printInWindow } from './print-window';
+import { CALL, DROP, NOTICE } from './electron/channels';
+import { keepsakesFolder } from './session/keepsakes';
+import { denyPermissions, isOwnPage, lockPage } from './electron/locked-page';
+import { nativeDialog } from './electron/native-dialog';
+import { PAGE, PRIVILEGES, servePage } from './electron/page-scheme';
+import { printInWindow } from './electron/print-window';
 import { Session } from './session';
 import { windowFilesBeside } from './window-files';
-import { windowMenu } from './window-menu';
-import { keepWindowState, LEAST, readWindowState } from './window-state';
+import { windowMenu } from './electron/window-menu';
+import { keepWindowState, LEAST, readWindowState } from './electron/window-state';
 
 /** Paper and ink of the page, so that the frame does not flash before the page is drawn. */
 const PAPER = { light: '#faf8f3', dark: '#1b1c1e' };

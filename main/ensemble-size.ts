@@ -2,7 +2,7 @@ import { formatCount, formatNumber } from '../src/audit/wording';
 import { InputError } from '../src/study/input-error';
 import { MOST_REPLICAS, type Study } from '../src/study/study';
 import type { Tally } from '../src/tally/tally';
-import { MatrixThread } from './matrix-thread';
+import { MatrixThread } from './session/matrix-thread';
 import type { Progress } from './progress';
 
 export interface EnsembleSizeOptions {

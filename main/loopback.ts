@@ -3,8 +3,8 @@ import { createReadStream } from 'node:fs';
 import { createServer, type IncomingMessage, type Server, type ServerResponse } from 'node:http';
 import type { AddressInfo } from 'node:net';
 import type { Answer, Notice } from './bridge';
-import { decode, encode } from './codec';
-import { filesUnder, PAGE_HEADERS, typeOf } from './page-files';
+import { decode, encode } from './page/codec';
+import { filesUnder, PAGE_HEADERS, typeOf } from './page/page-files';
 
 /** What carries calls to the session and notices back; `Session` is one. */
 export interface Listener {

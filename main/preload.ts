@@ -1,6 +1,6 @@
 import { contextBridge, ipcRenderer, webUtils } from 'electron';
 import type { Bridge, Notice } from './bridge';
-import { CALL, DROP, NOTICE } from './channels';
+import { CALL, DROP, NOTICE } from './electron/channels';
 
 const listeners = new Set<(notice: Notice) => void>();
 ipcRenderer.on(NOTICE, (_event, notice: Notice) => listeners.forEach((listener) => listener(notice)));

@@ -11,13 +11,13 @@ import { handOverCalls } from './calls/hand-over-calls';
 import type { Desk, Desktop, Handlers, WorkerFiles } from './calls/handlers';
 import { matrixCalls } from './calls/matrix-calls';
 import { studyCalls } from './calls/study-calls';
-import { Chosen } from './chosen';
-import { Jobs } from './jobs';
-import { Keepsakes, keepsakesFolder } from './keepsakes';
-import { Lease } from './lease';
-import { MatrixThread } from './matrix-thread';
-import { refusalOf } from './refusal';
-import { StudyEvents } from './study-events';
+import { Chosen } from './session/chosen';
+import { Jobs } from './session/jobs';
+import { Keepsakes, keepsakesFolder } from './session/keepsakes';
+import { Lease } from './session/lease';
+import { MatrixThread } from './session/matrix-thread';
+import { refusalOf } from './session/refusal';
+import { StudyEvents } from './session/study-events';
 import { VERSION } from './version';
 
 /** Bytes of event columns that a window keeps in memory; beyond them files are read again. */

@@ -1,5 +1,5 @@
 import type { StudyInput } from '../../src/study/study';
-import type { Job } from '../jobs';
+import type { Job } from '../session/jobs';
 import type { Progress } from '../progress';
 import type { Desk, Handlers } from './handlers';
 import { atTally } from './matrix-calls';

@@ -5,8 +5,8 @@ import { evenEdges } from '../../src/study/axis';
 import { rowSums, type Tally } from '../../src/tally/tally';
 import { equalPopulation, followResolution, mergeThin } from '../../src/tally/suggest-axis';
 import type { AxisSuggestion, Checked, Histogram } from '../bridge';
-import { Refused } from '../refusal';
-import type { StudyFiles } from '../study-events';
+import { Refused } from '../session/refusal';
+import type { StudyFiles } from '../session/study-events';
 import { studyFiles } from './event-calls';
 import type { Desk, Handlers } from './handlers';
 

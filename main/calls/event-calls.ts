@@ -5,11 +5,11 @@ import { parseStudy, type StudyInput } from '../../src/study/study';
 import { expandFiles } from '../../src/study/paths';
 import type { FileFacts } from '../../src/events/batch';
 import type { EventsRead, FileInspection, ProposedStudy, Range, RejectedRows, RowPage } from '../bridge';
-import type { Job } from '../jobs';
+import type { Job } from '../session/jobs';
 import type { Pool } from '../pool';
 import type { Reading } from '../read-events';
-import { Refused } from '../refusal';
-import type { StudyFiles } from '../study-events';
+import { Refused } from '../session/refusal';
+import type { StudyFiles } from '../session/study-events';
 import type { FirstRows, InspectCalls, Inspected } from '../workers/inspect-task';
 import type { Desk, Handlers } from './handlers';
 

@@ -5,9 +5,9 @@ import { createHash, randomUUID } from 'node:crypto';
 import { InputError } from '../../src/study/input-error';
 import { expandFiles, type NamedFile } from '../../src/study/paths';
 import type { ChosenFile, ChosenFiles, FolderListing, PlaceKind, Refusal } from '../bridge';
-import { isHidden } from '../chosen';
-import { knownPlaces, listFolder, looksLike } from '../list-folder';
-import { Refused, refusalOf } from '../refusal';
+import { isHidden } from '../session/chosen';
+import { knownPlaces, listFolder, looksLike } from '../session/list-folder';
+import { Refused, refusalOf } from '../session/refusal';
 import type { Desk, Handlers } from './handlers';
 
 /** Choosing files and places, and writing what the page made. */

@@ -2,7 +2,7 @@ import type { BundleWritten, Checked, Verification, WrittenFiles } from '../brid
 import type { Model } from '../../src/handover/analyse';
 import { buildBundle } from '../build';
 import { convertBundle } from '../convert';
-import type { Job } from '../jobs';
+import type { Job } from '../session/jobs';
 import { writeReport } from '../report';
 import { verifyBundle } from '../verify';
 import { studyFiles } from './event-calls';

@@ -1,10 +1,10 @@
 import type { CallName, Checked, Notice, Result } from '../bridge';
-import type { Chosen } from '../chosen';
-import type { Jobs } from '../jobs';
-import type { Keepsakes } from '../keepsakes';
-import type { Lease } from '../lease';
-import type { MatrixThread } from '../matrix-thread';
-import type { StudyEvents } from '../study-events';
+import type { Chosen } from '../session/chosen';
+import type { Jobs } from '../session/jobs';
+import type { Keepsakes } from '../session/keepsakes';
+import type { Lease } from '../session/lease';
+import type { MatrixThread } from '../session/matrix-thread';
+import type { StudyEvents } from '../session/study-events';
 import type { InspectCalls } from '../workers/inspect-task';
 
 /** A function for each of some calls, with the checked argument in and the result out. */

@@ -3,11 +3,11 @@ import { resolve } from 'node:path';
 import { InputError } from '../../src/study/input-error';
 import type { Study, StudyInput } from '../../src/study/study';
 import type { TallyView } from '../bridge';
-import { Latest } from '../latest';
-import type { Job } from '../jobs';
-import { Refused } from '../refusal';
-import type { KeyedTally, StudyFiles } from '../study-events';
-import type { ColumnMeasures } from '../workers/column-measures';
+import { Latest } from '../session/latest';
+import type { Job } from '../session/jobs';
+import { Refused } from '../session/refusal';
+import type { KeyedTally, StudyFiles } from '../session/study-events';
+import type { ColumnMeasures } from '../workers/views/column-measures';
 import { studyFiles } from './event-calls';
 import type { Desk, Handlers } from './handlers';
 

@@ -4,7 +4,7 @@ import { InputError } from '../../src/study/input-error';
 import { expandFiles } from '../../src/study/paths';
 import { parseStudy, parseStudyText, type Study, type StudyInput } from '../../src/study/study';
 import type { ChosenFile, OpenedStudy, Refusal, SavedStudy } from '../bridge';
-import { refusalOf } from '../refusal';
+import { refusalOf } from '../session/refusal';
 import { chooseFile, writeWhole } from './file-calls';
 import type { Desk, Handlers } from './handlers';
 

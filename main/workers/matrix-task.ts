@@ -25,16 +25,16 @@ import type {
   ReplicasNeeded,
 } from '../bridge';
 import { replicasNeeded } from '../replicas-needed';
-import { auditView } from './audit-view';
-import { cellView } from './cell-view';
-import { columnView } from './column-view';
-import { comparisonView } from './comparison-view';
-import { columnMeasures, type ColumnMeasures } from './column-measures';
-import { influenceView } from './influence-view';
-import { planView } from './plan-view';
-import { posteriorView } from './posterior-view';
-import { rehearsalView } from './rehearsal-view';
-import { sensitivityView } from './sensitivity-view';
+import { auditView } from './views/audit-view';
+import { cellView } from './views/cell-view';
+import { columnView } from './views/column-view';
+import { comparisonView } from './views/comparison-view';
+import { columnMeasures, type ColumnMeasures } from './views/column-measures';
+import { influenceView } from './views/influence-view';
+import { planView } from './views/plan-view';
+import { posteriorView } from './views/posterior-view';
+import { rehearsalView } from './views/rehearsal-view';
+import { sensitivityView } from './views/sensitivity-view';
 import type { Handled, Handlers } from './serve';
 
 /** A study and the tally that was taken under `key`. */

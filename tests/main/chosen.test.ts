@@ -2,9 +2,9 @@ import { mkdirSync, mkdtempSync, rmSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, beforeAll, beforeEach, describe, expect, it } from 'vitest';
-import { Chosen, isHidden } from '../../main/chosen';
-import { listFolder } from '../../main/list-folder';
-import { Refused } from '../../main/refusal';
+import { Chosen, isHidden } from '../../main/session/chosen';
+import { listFolder } from '../../main/session/list-folder';
+import { Refused } from '../../main/session/refusal';
 
 let folder: string;
 let chosen: Chosen;

@@ -1,7 +1,7 @@
 import fc from 'fast-check';
 import { deserialize, serialize } from 'node:v8';
 import { describe, expect, it } from 'vitest';
-import { decode, encode } from '../../main/codec';
+import { decode, encode } from '../../main/page/codec';
 
 const round = (value: unknown): unknown => decode(encode(value));
 

@@ -264,7 +264,7 @@ describe('calls of the page', () => {
   });
 
   it('may be made with reactive state, which is a proxy that no clone takes', async () => {
-    const { connect } = await import('../../main/page-bridge');
+    const { connect } = await import('../../main/page/page-bridge');
     vi.stubGlobal('window', { entasis: bridge() });
     const page = await connect();
     vi.unstubAllGlobals();
@@ -338,7 +338,7 @@ describe('files', () => {
 
 describe('a report', () => {
   it('is printed in a window of its own that runs no script, is not seen and is gone afterwards', async () => {
-    const { printInWindow } = await import('../../main/print-window');
+    const { printInWindow } = await import('../../main/electron/print-window');
     const pdf = join(folder, 'report.pdf');
     await printInWindow(join(folder, 'report.html'), pdf);
     const printing = electron.windows.pop() as OpenWindow;

@@ -1,7 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import type { Progress } from '../../main/bridge';
-import { Jobs, toldProgress } from '../../main/jobs';
-import { Latest } from '../../main/latest';
+import { Jobs, toldProgress } from '../../main/session/jobs';
+import { Latest } from '../../main/session/latest';
 import { Cancelled } from '../../src/study/input-error';
 
 function clocked() {

@@ -3,8 +3,8 @@ import { mkdtempSync, readdirSync, rmSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterEach, beforeEach, describe, expect, it } from 'vitest';
-import { Keepsakes } from '../../main/keepsakes';
-import { keepWindowState, readWindowState } from '../../main/window-state';
+import { Keepsakes } from '../../main/session/keepsakes';
+import { keepWindowState, readWindowState } from '../../main/electron/window-state';
 import type { StudyInput } from '../../src/study/study';
 
 let folder: string;

@@ -5,7 +5,7 @@ import { networkInterfaces, tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, beforeAll, beforeEach, afterEach, describe, expect, it } from 'vitest';
 import type { Answer, Notice } from '../../main/bridge';
-import { decode, encode } from '../../main/codec';
+import { decode, encode } from '../../main/page/codec';
 import { startLoopback, type Loopback } from '../../main/loopback';
 
 interface Reply {

@@ -1,6 +1,6 @@
 import { existsSync, statSync } from 'node:fs';
 import { isAbsolute, parse, relative, resolve, sep } from 'node:path';
-import type { PlaceKind } from './bridge';
+import type { PlaceKind } from '../bridge';
 import { Refused } from './refusal';
 
 /** Endings a file of each kind may have; a bundle is a folder. A page can never be made to write a script or a profile. */

@@ -1,6 +1,6 @@
 import { readFile } from 'node:fs/promises';
 import type { Protocol } from 'electron';
-import { filesUnder, PAGE_HEADERS, typeOf } from './page-files';
+import { filesUnder, PAGE_HEADERS, typeOf } from '../page/page-files';
 
 /** The desktop's page has a scheme of its own: `file:` could reach the whole disk. */
 export const SCHEME = 'entasis';

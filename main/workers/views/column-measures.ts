@@ -1,11 +1,11 @@
-import { outcomePlaces } from '../../src/audit/audit-input';
-import { columnShare, columnShares, type ColumnShare } from '../../src/audit/column-share';
-import { LOSSES_UNRECORDED } from '../../src/audit/loss';
-import { NO_MATCHING_BINS } from '../../src/audit/stability';
-import { axesMatch, binRange } from '../../src/study/axis';
-import { rowSums } from '../../src/tally/tally';
-import type { Estimates, TallyView } from '../bridge';
-import type { Analysis } from './matrix-task';
+import { outcomePlaces } from '../../../src/audit/audit-input';
+import { columnShare, columnShares, type ColumnShare } from '../../../src/audit/column-share';
+import { LOSSES_UNRECORDED } from '../../../src/audit/loss';
+import { NO_MATCHING_BINS } from '../../../src/audit/stability';
+import { axesMatch, binRange } from '../../../src/study/axis';
+import { rowSums } from '../../../src/tally/tally';
+import type { Estimates, TallyView } from '../../bridge';
+import type { Analysis } from '../matrix-task';
 
 /** What the axes stage shows of every column while an edge is dragged. */
 export type ColumnMeasures = Pick<

@@ -3,8 +3,8 @@ import { existsSync, mkdirSync, readdirSync, readFileSync, renameSync, rmSync, w
 import { homedir } from 'node:os';
 import { join } from 'node:path';
 import { z } from 'zod';
-import type { StudyInput } from '../src/study/study';
-import type { Draft, RecentStudy } from './bridge';
+import type { StudyInput } from '../../src/study/study';
+import type { Draft, RecentStudy } from '../bridge';
 
 /** Studies remembered; more would not be a list of recent ones. */
 const MOST_RECENT = 12;

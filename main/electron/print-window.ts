@@ -1,6 +1,6 @@
 import { writeFile } from 'node:fs/promises';
 import { BrowserWindow } from 'electron';
-import { stopIfCancelled } from '../src/study/input-error';
+import { stopIfCancelled } from '../../src/study/input-error';
 import { lockPage } from './locked-page';
 
 /** Prints an HTML file to a PDF file in a window that is not shown and runs no script. */

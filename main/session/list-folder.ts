@@ -1,7 +1,7 @@
 import { readdirSync, statSync, existsSync } from 'node:fs';
 import { homedir } from 'node:os';
 import { dirname, join, resolve } from 'node:path';
-import type { FolderEntry, FolderListing } from './bridge';
+import type { FolderEntry, FolderListing } from '../bridge';
 import { isBundle, isHidden } from './chosen';
 import { Refused } from './refusal';
 

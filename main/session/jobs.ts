@@ -1,6 +1,6 @@
-import { Cancelled } from '../src/study/input-error';
-import type { Progress as ToldProgress } from './bridge';
-import type { Progress } from './progress';
+import { Cancelled } from '../../src/study/input-error';
+import type { Progress as ToldProgress } from '../bridge';
+import type { Progress } from '../progress';
 import { Refused } from './refusal';
 
 /** Notices of one job are at least this far apart: a bar needs no more, and the window is not flooded. */

@@ -1,5 +1,5 @@
-import { Cancelled, InputError } from '../src/study/input-error';
-import { Pool, type Calls } from './pool';
+import { Cancelled, InputError } from '../../src/study/input-error';
+import { Pool, type Calls } from '../pool';
 
 /**
  * Workers that are lent for one piece of work and kept for the next: starting one takes longer than most of that work.

@@ -1,4 +1,4 @@
-import type { Answer, Argument, Bridge, CallName, Notice, Refusal, Result } from './bridge';
+import type { Answer, Argument, Bridge, CallName, Notice, Refusal, Result } from '../bridge';
 import { decode, encode } from './codec';
 
 /**

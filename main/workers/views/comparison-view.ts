@@ -1,12 +1,12 @@
-import { compareTallies, type ColumnComparison, type Comparison } from '../../src/audit/compare';
-import { isAbsent, type Measure } from '../../src/audit/measure';
-import { matrixSampler, modelOf } from '../../src/handover/analyse';
-import { bundleTally } from '../../src/handover/bundle-tally';
-import { openBundle } from '../../src/handover/open-bundle';
-import { normalQuantile } from '../../src/numerics/normal';
-import { binRange } from '../../src/study/axis';
-import type { ComparisonView } from '../bridge';
-import type { Audited } from './matrix-task';
+import { compareTallies, type ColumnComparison, type Comparison } from '../../../src/audit/compare';
+import { isAbsent, type Measure } from '../../../src/audit/measure';
+import { matrixSampler, modelOf } from '../../../src/handover/analyse';
+import { bundleTally } from '../../../src/handover/bundle-tally';
+import { openBundle } from '../../../src/handover/open-bundle';
+import { normalQuantile } from '../../../src/numerics/normal';
+import { binRange } from '../../../src/study/axis';
+import type { ComparisonView } from '../../bridge';
+import type { Audited } from '../matrix-task';
 
 /** The rate of false discoveries at which columns are named as differing. */
 const RATE = 0.05;

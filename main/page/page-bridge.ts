@@ -1,4 +1,4 @@
-import type { Bridge } from './bridge';
+import type { Bridge } from '../bridge';
 import { decode, encode } from './codec';
 import { loopbackBridge } from './loopback-bridge';
 

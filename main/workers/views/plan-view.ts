@@ -1,9 +1,9 @@
-import { formatCount } from '../../src/audit/wording';
-import { planCampaign, planEfficiency, planFlag, planMatrixShare, type Plan } from '../../src/audit/planner';
-import { isAbsent } from '../../src/audit/measure';
-import { binRange } from '../../src/study/axis';
-import type { Checked, PlanView } from '../bridge';
-import type { Audited } from './matrix-task';
+import { formatCount } from '../../../src/audit/wording';
+import { planCampaign, planEfficiency, planFlag, planMatrixShare, type Plan } from '../../../src/audit/planner';
+import { isAbsent } from '../../../src/audit/measure';
+import { binRange } from '../../../src/study/axis';
+import type { Checked, PlanView } from '../../bridge';
+import type { Audited } from '../matrix-task';
 
 type Target = Checked<'plan'>['target'];
 type Ratios = Pick<PlanView, 'before' | 'after'>;

@@ -1,9 +1,9 @@
-import { BLOCK, drawBlock } from '../../src/ensemble/draw';
-import { simultaneousBand } from '../../src/posterior/bands';
-import type { Posterior } from '../../src/posterior/posterior';
-import type { ColumnView } from '../bridge';
+import { BLOCK, drawBlock } from '../../../src/ensemble/draw';
+import { simultaneousBand } from '../../../src/posterior/bands';
+import type { Posterior } from '../../../src/posterior/posterior';
+import type { ColumnView } from '../../bridge';
 import { checkPlace } from './cell-view';
-import type { Analysis } from './matrix-task';
+import type { Analysis } from '../matrix-task';
 
 /** Replicas behind a band at 95 %: its half-width is then known to about 2 % (50 replicas lie beyond it). */
 const REPLICAS = 1024;

@@ -1,10 +1,10 @@
-import { betaCdf, betaQuantile, betaQuantileUpper } from '../../src/numerics/beta';
-import { cellInterval } from '../../src/posterior/intervals';
-import { marginalOf, type Marginal } from '../../src/posterior/marginal';
-import { hasNoPosterior } from '../../src/posterior/posterior';
-import { InputError } from '../../src/study/input-error';
-import type { CellView } from '../bridge';
-import type { Analysis } from './matrix-task';
+import { betaCdf, betaQuantile, betaQuantileUpper } from '../../../src/numerics/beta';
+import { cellInterval } from '../../../src/posterior/intervals';
+import { marginalOf, type Marginal } from '../../../src/posterior/marginal';
+import { hasNoPosterior } from '../../../src/posterior/posterior';
+import { InputError } from '../../../src/study/input-error';
+import type { CellView } from '../../bridge';
+import type { Analysis } from '../matrix-task';
 
 /** Steps of the density's grid: a curve of that many pixels needs no more. */
 const STEPS = 300;

@@ -1,7 +1,7 @@
-import { Cancelled, InputError } from '../src/study/input-error';
+import { Cancelled, InputError } from '../../src/study/input-error';
 import type { KeyedTally } from './study-events';
-import { Pool } from './pool';
-import type { MatrixCalls } from './workers/matrix-task';
+import { Pool } from '../pool';
+import type { MatrixCalls } from '../workers/matrix-task';
 
 type Name = Exclude<keyof MatrixCalls, 'take'>;
 

@@ -1,5 +1,5 @@
 import type { MenuItemConstructorOptions } from 'electron';
-import type { MenuCommand } from './bridge';
+import type { MenuCommand } from '../bridge';
 
 type Tell = (command: MenuCommand['command']) => void;
 

@@ -1,11 +1,11 @@
 import { statSync } from 'node:fs';
-import { canonicalJson } from '../src/study/fingerprint';
-import { Cancelled } from '../src/study/input-error';
-import type { NamedFile } from '../src/study/paths';
-import type { Study } from '../src/study/study';
-import type { Tally } from '../src/tally/tally';
-import type { Progress } from './progress';
-import { readEvents, type Reading } from './read-events';
+import { canonicalJson } from '../../src/study/fingerprint';
+import { Cancelled } from '../../src/study/input-error';
+import type { NamedFile } from '../../src/study/paths';
+import type { Study } from '../../src/study/study';
+import type { Tally } from '../../src/tally/tally';
+import type { Progress } from '../progress';
+import { readEvents, type Reading } from '../read-events';
 
 /** A study whose files were found and may be read. */
 export interface StudyFiles {

@@ -1,6 +1,6 @@
 import { basename } from 'node:path';
 import type { BrowserWindow, Dialog, FileFilter } from 'electron';
-import type { Checked, PlaceKind } from './bridge';
+import type { Checked, PlaceKind } from '../bridge';
 
 const EVENTS: FileFilter[] = [
   {

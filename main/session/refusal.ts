@@ -1,5 +1,5 @@
-import { Cancelled, InputError, oneLine } from '../src/study/input-error';
-import type { Refusal, RefusalCode } from './bridge';
+import { Cancelled, InputError, oneLine } from '../../src/study/input-error';
+import type { Refusal, RefusalCode } from '../bridge';
 
 /** A call that the bridge does not do, and why: no fault of the engine. */
 export class Refused extends Error {
