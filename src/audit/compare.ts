@@ -15,7 +15,10 @@ import type { ReferenceSpectrum } from './reference';
 /** One column of two campaigns: how far its outcome probabilities are apart. */
 export interface ColumnComparison {
   column: string;
-  /** Total-variation distance between the two, with its interval over the outcomes where the first stands above the second. */
+  /**
+   * Total-variation distance between the two posterior means, with its interval over the outcomes where the first stands
+   * above the second; 0 at its lower end where noise alone could bring it about.
+   */
   distance: number;
   lower: number;
   upper: number;
@@ -57,7 +60,7 @@ export function compareTallies(
   const { columns, outcomes } = shapeOf(first.tally);
   const differences = differencesOf(first, second, sampler);
   const together = bothCells(first.tally.cells, second.tally.cells);
-  const most = Math.ceil((2 * columns) / FALSE_DISCOVERIES);
+  const most = Math.max(LEAST_TABLES, Math.ceil((2 * columns) / FALSE_DISCOVERIES));
   const found = first.tally.columnNames.map((column, j) => {
     const table = groupTableOf(together, { groups: 2, columns, outcomes }, j);
     const stream = streamOf(first.study.ensemble.seed, PURPOSE.compare, j, 0);
@@ -78,6 +81,9 @@ export function compareTallies(
 
 /** The rate at which adjusted p-values are meant to be read; it sets how finely they are drawn. */
 export const FALSE_DISCOVERIES = 0.05;
+
+/** Tables drawn at the least, so that a p-value of few columns is told finely enough. */
+const LEAST_TABLES = 4000;
 
 function requireSameAxes(first: Tally, second: Tally, where: string): void {
   for (const [what, a, b] of [
@@ -163,16 +169,17 @@ function comparisonOf(
 ): ColumnComparison {
   const total = (g: number): number => contents.subarray(g * outcomes, (g + 1) * outcomes).reduce((a, b) => a + b, 0);
   const [a, b] = [total(0), total(1)];
-  const shift = Float64Array.from({ length: outcomes }, (_, k) => contents[k]! / a - contents[outcomes + k]! / b);
-  const above = Float64Array.from({ length: DRAWS }, (_, r) => {
-    const moved = shift.reduce((sum, s, k) => (s > 0 ? sum - draws[r * outcomes + k]! : sum), 0);
-    return Math.abs(moved);
-  });
+  // Outcomes from which the second campaign has moved away: fixed by the means, so that noise of either sign averages out.
+  const left = Float64Array.from({ length: DRAWS }, (_, r) =>
+    mean.reduce((sum, m, k) => (m < 0 ? sum - draws[r * outcomes + k]! : sum), 0),
+  );
+  const interval = intervalOfDraws(left, study.credibility);
   const deviates = mean.map((m, k) => (sd[k]! > 0 ? Math.abs(m) / sd[k]! : 0));
   return {
     column,
-    distance: shift.reduce((sum, s) => sum + Math.abs(s), 0) / 2,
-    ...intervalOfDraws(above, study.credibility),
+    distance: mean.reduce((sum, m) => sum + Math.abs(m), 0) / 2,
+    lower: Math.max(0, interval.lower),
+    upper: interval.upper,
     // A group's distance from the pool is the other's share of the whole times the distance between the two.
     expectedDistance: (test.expectedDistance * (a + b)) / Math.max(a, b),
     gSquared: test.gSquared,

@@ -50,10 +50,11 @@ for j in range(COLUMNS):
     p = (1 + sum(g_squared(t)[0] >= g - 1e-9 for t in drawn)) / (TABLES + 1)
     tv = 0.5 * np.abs(drawn[:, 0] / a.sum() - drawn[:, 1] / b.sum()).sum(1)
     x, y = (rng.dirichlet(c + PRIOR, DRAWS) for c in (a, b))
-    above = a / a.sum() > b / b.sum()
-    moved = np.abs((x - y)[:, above].sum(1))
+    pa, pb = (a + PRIOR) / (a + PRIOR).sum(), (b + PRIOR) / (b + PRIOR).sum()
+    above = pa > pb
+    moved = (x - y)[:, above].sum(1)
     q = [0.025, 0.975]
-    columns.append({"distance": 0.5 * np.abs(a / a.sum() - b / b.sum()).sum(), "interval": np.quantile(moved, q).tolist(),
+    columns.append({"distance": 0.5 * np.abs(pa - pb).sum(), "interval": np.maximum(0, np.quantile(moved, q)).tolist(),
                     "expectedDistance": tv.mean(), "gSquared": g, "freedom": freedom, "pValue": p,
                     "difference": ((b + PRIOR) / (b + PRIOR).sum() - (a + PRIOR) / (a + PRIOR).sum()).tolist(),
                     "lower": np.quantile(y - x, q[0], axis=0).tolist(), "upper": np.quantile(y - x, q[1], axis=0).tolist()})
