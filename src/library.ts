@@ -53,6 +53,8 @@ export { breaksOf, sequentialBetas, sharesOf, type SequentialBetas } from './ens
 
 // 5. Bundles and hand-over
 export { openBundle, readArray, replicaBlocks, type Bundle, type ReplicaBlock } from './handover/open-bundle';
+export { bundleTally } from './handover/bundle-tally';
+export { reportHtml } from './handover/report/report';
 export { BUNDLE_SCHEMA, parseManifest, type Manifest } from './handover/manifest';
 export { FORMATS, formatOf, type FormatId, type HandoverFormat } from './handover/formats';
 export type { HandoverOptions, ReplicaRange } from './handover/handover-options';

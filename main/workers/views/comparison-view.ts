@@ -1,4 +1,4 @@
-import { compareTallies, type ColumnComparison, type Comparison } from '../../../src/audit/compare';
+import { FALSE_DISCOVERIES, compareTallies, type ColumnComparison, type Comparison } from '../../../src/audit/compare';
 import { isAbsent, type Measure } from '../../../src/audit/measure';
 import { matrixSampler, modelOf } from '../../../src/handover/analyse';
 import { bundleTally } from '../../../src/handover/bundle-tally';
@@ -7,9 +7,6 @@ import { normalQuantile } from '../../../src/numerics/normal';
 import { binRange } from '../../../src/study/axis';
 import type { ComparisonView } from '../../bridge';
 import type { Audited } from '../matrix-task';
-
-/** The rate of false discoveries at which columns are named as differing. */
-const RATE = 0.05;
 
 /** The study as it stands against a bundle of the same axes. Throws `InputError` where their axes differ. */
 export function comparisonView({ analysis, reference }: Audited, folder: string): ComparisonView {
@@ -32,7 +29,7 @@ export function comparisonView({ analysis, reference }: Audited, folder: string)
     distance: list(({ distance }) => distance),
     pValue: list(({ pValue }) => pValue),
     adjusted,
-    differing: [...adjusted.keys()].filter((j) => adjusted[j]! <= RATE),
+    differing: [...adjusted.keys()].filter((j) => adjusted[j]! <= FALSE_DISCOVERIES),
     folded: foldedView(comparison, outcomeNames.slice(...windowOf(analysis)), analysis.study.credibility),
     seconds: 0,
   };
