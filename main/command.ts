@@ -1,3 +1,4 @@
+#!/usr/bin/env node
 import { Command, CommanderError, InvalidArgumentError, Option } from 'commander';
 import { availableParallelism } from 'node:os';
 import { parseReplicaRange } from '../src/handover/handover-options';
