@@ -18,12 +18,12 @@ export interface Field {
 }
 
 export type Role = keyof Study['roles'];
-export const ROLES: readonly { role: Role; title: string; does: string }[] = [
-  { role: 'true', title: 'True value', does: 'known by the tag or the simulation' },
-  { role: 'reconstructed', title: 'Reconstructed value', does: 'what the instrument says' },
-  { role: 'weight', title: 'Weight', does: 'of each event in every sum' },
-  { role: 'run', title: 'Run', does: 'label to look for drift by' },
-  { role: 'event', title: 'Event identity', does: 'to find duplicates by' },
+export const ROLES: readonly { role: Role; title: string; short: string; does: string }[] = [
+  { role: 'true', title: 'True value', short: 'True value', does: 'known by the tag or the simulation' },
+  { role: 'reconstructed', title: 'Reconstructed value', short: 'Reconstructed', does: 'what the instrument says' },
+  { role: 'weight', title: 'Weight', short: 'Weight', does: 'of each event in every sum' },
+  { role: 'run', title: 'Run', short: 'Run', does: 'label to look for drift by' },
+  { role: 'event', title: 'Event identity', short: 'Event identity', does: 'to find duplicates by' },
 ];
 
 /** The fields of the files, in the order of `shown`, then those only others have. */
