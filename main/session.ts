@@ -90,8 +90,8 @@ export class Session {
   /** Stops all work and lets go of files and workers. */
   async close(): Promise<void> {
     this.desk.jobs.cancelAll();
-    const { events, matrix, inspectors } = this.desk;
-    await Promise.all([events.close(), matrix.end(), inspectors.end()]);
+    const { events, matrix, audits, long, inspectors } = this.desk;
+    await Promise.all([events.close(), matrix.end(), audits.end(), long.end(), inspectors.end()]);
   }
 }
 
@@ -112,6 +112,8 @@ function deskOf(options: SessionOptions, tell: (notice: Notice) => void): Desk {
     keepsakes: new Keepsakes(options.keepsakes ?? keepsakesFolder()),
     events: new StudyEvents({ readWorker: workerFiles.read, workers, keep }),
     matrix: new MatrixThread(workerFiles.matrix),
+    audits: new MatrixThread(workerFiles.matrix),
+    long: new MatrixThread(workerFiles.matrix),
     inspectors: new Lease(workerFiles.inspect),
     desktop,
     now: () => performance.now(),

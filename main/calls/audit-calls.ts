@@ -12,32 +12,32 @@ export function auditCalls(desk: Desk): Handlers<AuditCall> {
   return {
     influence: async ({ study, folder }) => {
       const { tally, argument } = await at(study, folder);
-      return desk.matrix.ask(tally, 'influence', argument);
+      return desk.audits.ask(tally, 'influence', argument);
     },
     plan: async ({ study, folder, target }) => {
       const { tally, argument } = await at(study, folder);
-      return desk.matrix.ask(tally, 'plan', { ...argument, target });
+      return desk.audits.ask(tally, 'plan', { ...argument, target });
     },
     priorSensitivity: ({ study, folder, job }) =>
       desk.jobs.run(job, async ({ signal }) => {
         const { tally, argument } = await at(study, folder);
-        return desk.matrix.ask(tally, 'priorSensitivity', argument, { signal });
+        return desk.long.ask(tally, 'priorSensitivity', argument, { signal });
       }),
     rehearse: ({ study, folder, repetitions, job }) =>
       desk.jobs.run(job, async (running) => {
         const { tally, argument } = await at(study, folder);
-        return desk.matrix.ask(tally, 'rehearse', { ...argument, repetitions }, steps(running, 'rehearsing'));
+        return desk.long.ask(tally, 'rehearse', { ...argument, repetitions }, steps(running, 'rehearsing'));
       }),
     compare: ({ study, folder, bundle, job }) =>
       desk.jobs.run(job, async ({ signal }) => {
         const path = desk.chosen.mayReadBundle(bundle);
         const { tally, argument } = await at(study, folder);
-        return desk.matrix.ask(tally, 'compare', { ...argument, bundle: path }, { signal });
+        return desk.long.ask(tally, 'compare', { ...argument, bundle: path }, { signal });
       }),
     replicasNeeded: ({ study, folder, digits, job }) =>
       desk.jobs.run(job, async (running) => {
         const { tally, argument } = await at(study, folder);
-        return desk.matrix.ask(tally, 'replicasNeeded', { ...argument, digits }, steps(running, 'drawing'));
+        return desk.long.ask(tally, 'replicasNeeded', { ...argument, digits }, steps(running, 'drawing'));
       }),
   };
 }

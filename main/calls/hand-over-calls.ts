@@ -31,7 +31,7 @@ async function build(desk: Desk, argument: Checked<'build'>, job: Job): Promise<
   const asked = { study: files.study, referenceTable: referenceTable(desk, files.study, files.folder) };
   const analyse = async (model: Model) => ({
     ...model,
-    ...(await desk.matrix.ask(keyed, 'analysis', asked, { signal })),
+    ...(await desk.audits.ask(keyed, 'analysis', asked, { signal })),
   });
   const source = { tally, inputs: reading.inputs, rejectedRows: reading.rejectedRows };
   const settings = { version, workers, drawWorker: workerFiles.draw, signal, onProgress };

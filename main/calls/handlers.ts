@@ -45,6 +45,9 @@ export interface Desk {
   keepsakes: Keepsakes;
   events: StudyEvents;
   matrix: MatrixThread;
+  /** Audits take seconds and rehearsals minutes: each has a thread of its own, so that a chosen cell never waits for them. */
+  audits: MatrixThread;
+  long: MatrixThread;
   inspectors: Lease<InspectCalls>;
   desktop: Desktop | null;
   now: () => number;

@@ -37,7 +37,7 @@ export function matrixCalls(desk: Desk): Handlers<MatrixCall> {
       const { tally, argument } = await atTally(desk, study, folder);
       return desk.matrix.ask(tally, 'replicas', { ...argument, indices });
     },
-    audit: ({ study, folder }) => audits.run(async () => desk.matrix.ask(...(await at(desk, study, folder, 'audit')))),
+    audit: ({ study, folder }) => audits.run(async () => desk.audits.ask(...(await at(desk, study, folder, 'audit')))),
   };
 }
 
