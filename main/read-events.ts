@@ -16,7 +16,7 @@ import type { Progress } from './progress';
 import { rejectsPath, type ReadCalls, type UnitDone } from './workers/read-task';
 
 /** Units a worker gets of a file that can be split: more than one, so that a slow worker does not hold up the end. */
-const UNITS_PER_WORKER = 3;
+const UNITS_PER_WORKER = 8;
 
 export interface ReadOptions {
   study: Study;

@@ -40,6 +40,8 @@ export class RowParser {
   private readonly long: Uint8Array;
   /** 1 for each byte at which a plain field ends or is no longer plain, and for each that is set aside around one. */
   private readonly stops = new Uint8Array(256);
+  /** The highest byte that may end a field: most bytes of a table are above it, and need no look into `stops`. */
+  private readonly highest: number;
   private readonly blanks = new Uint8Array(256);
   private readonly fields: Fields;
   /** Fields of any need; those of them that are not just one number; those of these that are a number too. */
@@ -67,6 +69,7 @@ export class RowParser {
     this.long = new Uint8Array(header.length);
     for (const blank of [SPACE, TAB]) this.blanks[blank] = blank === delimiter ? 0 : 1;
     for (const stop of [delimiter, LINE_FEED, RETURN, QUOTE]) this.stops[stop] = 1;
+    this.highest = this.stops.lastIndexOf(1);
   }
 
   /** Parses whole lines of `bytes[from, to)` until the builder is full; where it stopped. */
@@ -93,6 +96,7 @@ export class RowParser {
     const { kinds, needsOf, stops, blanks, long, builder } = this;
     const { numbers, places, capacity } = builder;
     const { delimiter } = this.layout;
+    const { highest } = this;
     const { starts, ends } = this.fields;
     const last = kinds.length - 1;
     let { rows } = builder;
@@ -103,7 +107,7 @@ export class RowParser {
       for (let field = 0; ; field++) {
         if (kinds[field] === SKIPPED) {
           if (bytes[p] === QUOTE) p = behindQuoted(bytes, p);
-          else while (stops[bytes[p]] === 0) p++;
+          else p = nextStop(bytes, p, highest, stops);
         } else if (kinds[field] === NUMBER) {
           while (blanks[bytes[p]] !== 0) p++;
           const begin = p;
@@ -244,4 +248,11 @@ const LONGEST_EXCERPT = 100;
 
 function excerpt(bytes: Uint8Array, from: number, to: number): string {
   return decode(bytes.subarray(from, Math.min(to, from + LONGEST_EXCERPT)));
+}
+
+/** The place of the first byte from `p` on that may end a field. */
+function nextStop(bytes: Uint8Array, p: number, highest: number, stops: Uint8Array): number {
+  let byte = bytes[p];
+  while (byte > highest || stops[byte] === 0) byte = bytes[++p];
+  return p;
 }

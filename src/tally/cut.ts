@@ -14,21 +14,22 @@ export function cutTests(cuts: readonly Cut[]): CutTest[] {
   });
 }
 
-const COMPARE: Record<Cut['is'], (x: number, values: readonly number[]) => boolean> = {
-  '<': (x, [v]) => x < v!,
-  '<=': (x, [v]) => x <= v!,
-  '>': (x, [v]) => x > v!,
-  '>=': (x, [v]) => x >= v!,
-  '=': (x, [v]) => x === v,
-  '!=': (x, [v]) => x !== v,
-  in: (x, values) => values.includes(x),
+const COMPARE: Record<Exclude<Cut['is'], 'in'>, (x: number, value: number) => boolean> = {
+  '<': (x, value) => x < value,
+  '<=': (x, value) => x <= value,
+  '>': (x, value) => x > value,
+  '>=': (x, value) => x >= value,
+  '=': (x, value) => x === value,
+  '!=': (x, value) => x !== value,
 };
 
 function numberTest(is: Cut['is'], values: number[]): CutTest {
-  const satisfies = COMPARE[is];
+  const among = new Set(values);
+  const satisfies = is === 'in' ? (x: number) => among.has(x) : COMPARE[is];
+  const value = values[0]!;
   return (column, rows, pass) => {
     const { values: xs } = column as NumberColumn;
-    for (let i = 0; i < rows; i++) pass[i] = xs[i] === xs[i] && satisfies(xs[i]!, values) ? 1 : 0;
+    for (let i = 0; i < rows; i++) pass[i] = xs[i] === xs[i] && satisfies(xs[i]!, value) ? 1 : 0;
   };
 }
 
