@@ -22,6 +22,9 @@ const BUNDLED = [
   'arquero',
   '@uwdata/flechette',
   'acorn',
+  'fzstd',
+  'yauzl',
+  'pend',
   ...STDLIB,
 ];
 
