@@ -20,12 +20,24 @@ export async function inspect(
   for (const { path, name } of files) facts.push({ ...(await inspectFile(path, around.signal)), path: name });
   const folder = flags.study ? dirname(resolve(flags.study)) : process.cwd();
   const names = files.map(({ path }) => relative(folder, path).split(sep).join('/'));
-  const proposed = proposeStudy(facts, names);
-  parseStudy(proposed.study, 'the proposed study');
-  const text = `${JSON.stringify(proposed.study, null, 2)}\n`;
-  if (flags.study) writeNew(flags.study, text);
-  if (flags.json) process.stdout.write(`${JSON.stringify({ files: facts, ...proposed })}\n`);
-  else process.stdout.write(inspectText(facts, proposed, flags.study, text));
+  const proposed = proposal(facts, names);
+  if (proposed instanceof InputError && flags.study) throw proposed;
+  if (!(proposed instanceof InputError) && flags.study) writeNew(flags.study, studyText(proposed));
+  process.stdout.write(
+    flags.json ? `${JSON.stringify(inspectJson(facts, proposed))}\n` : inspectText(facts, proposed, flags.study),
+  );
+}
+
+/** A study to start from, or why there can be none: the facts of the files are told either way. */
+function proposal(facts: FileFacts[], names: string[]): ProposedStudy | InputError {
+  try {
+    const proposed = proposeStudy(facts, names);
+    parseStudy(proposed.study, 'the proposed study');
+    return proposed;
+  } catch (error) {
+    if (error instanceof InputError) return error;
+    throw error;
+  }
 }
 
 function writeNew(path: string, text: string): void {
@@ -33,24 +45,35 @@ function writeNew(path: string, text: string): void {
   writeFileSync(path, text);
 }
 
-function inspectText(
-  facts: FileFacts[],
-  { reasons, study }: ProposedStudy,
-  written: string | undefined,
-  text: string,
-): string {
+function studyText({ study }: ProposedStudy): string {
+  return `${JSON.stringify(study, null, 2)}\n`;
+}
+
+function inspectJson(files: FileFacts[], proposed: ProposedStudy | InputError): unknown {
+  if (!(proposed instanceof InputError)) return { files, ...proposed };
+  const { where, what, remedy } = proposed;
+  return { files, study: null, problem: { where, what, remedy } };
+}
+
+function inspectText(facts: FileFacts[], proposed: ProposedStudy | InputError, written: string | undefined): string {
   const lines = facts.flatMap((file) => [
     `${file.path}: ${file.format}, ${formatCount(file.bytes)} bytes, ${formatCount(file.rows)} rows, ${formatCount(file.rejected)} unreadable`,
     ...columnLines(file.columns),
     '',
   ]);
-  const roles = Object.entries(study.roles).map(
-    ([role, column]) => `  ${role}: ${column} (by ${reasons[role as keyof typeof reasons]})`,
-  );
-  lines.push('proposed roles', ...roles, '');
-  if (written) lines.push(`starting study: ${written}`, `next: entasis build ${written}`);
-  else lines.push('starting study (--study PATH writes it):', text.trimEnd());
+  if (proposed instanceof InputError) lines.push(`no starting study: ${proposed.what}: ${proposed.remedy}`);
+  else lines.push(...proposalLines(proposed, written));
   return `${lines.join('\n')}\n`;
+}
+
+function proposalLines(proposed: ProposedStudy, written: string | undefined): string[] {
+  const roles = Object.entries(proposed.study.roles).map(
+    ([role, column]) => `  ${role}: ${column} (by ${proposed.reasons[role as keyof ProposedStudy['reasons']]})`,
+  );
+  const study = written
+    ? [`starting study: ${written}`, `next: entasis build ${written}`]
+    : ['starting study (--study PATH writes it):', studyText(proposed).trimEnd()];
+  return ['proposed roles', ...roles, '', ...study];
 }
 
 function columnLines(columns: ColumnFacts[]): string[] {

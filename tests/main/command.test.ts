@@ -117,6 +117,18 @@ describe('inspect', () => {
     expect(bundle).toBe(folder.path('plain.bundle'));
   });
 
+  it('tells what is in a file that no study can be proposed for, and why', async () => {
+    writeFileSync(folder.path('one.csv'), `value\n${Array.from({ length: 30 }, (_, i) => i / 4).join('\n')}\n`);
+    const { status, out } = await entasis('inspect', folder.path('one.csv'));
+    expect(status).toBe(0);
+    expect(out).toMatch(/value +number +0 +0 +0 +0 +7\.25/);
+    expect(out).toMatch(/no starting study: no two columns for true and reconstructed values/);
+    const json = JSON.parse((await entasis('inspect', folder.path('one.csv'), '--json')).out);
+    expect([json.files[0].rows, json.study]).toEqual([30, null]);
+    const refused = await entasis('inspect', folder.path('one.csv'), '--study', folder.path('one.study.json'));
+    expect([refused.status, existsSync(folder.path('one.study.json'))]).toEqual([2, false]);
+  });
+
   it('does not write over a study that is there', async () => {
     writeFileSync(folder.path('there.study.json'), 'mine');
     const { status, err } = await entasis(
