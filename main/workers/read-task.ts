@@ -2,10 +2,11 @@ import { closeSync, openSync, readSync, writeSync } from 'node:fs';
 import { join } from 'node:path';
 import type { Reject, Unit } from '../../src/events/batch';
 import { readerOfFormat } from '../../src/events/formats';
+import { BatchTally } from '../../src/tally/batch-tally';
 import { IdentitySpill } from '../../src/tally/identities';
 import type { TallyPlan } from '../../src/tally/plan';
-import { Selection, type Events } from '../../src/tally/selection';
-import { mostRuns, TallySums, type PlainTallySums } from '../../src/tally/tally-sums';
+import type { Events } from '../../src/tally/selection';
+import { TallySums, type PlainTallySums } from '../../src/tally/tally-sums';
 import { hashFile } from './hash-file';
 import type { Handlers } from './serve';
 
@@ -77,16 +78,14 @@ export function readTask(): Handlers<ReadCalls> {
 const BYTES_BETWEEN_NOTES = 2 << 20;
 
 class Reading {
-  private readonly selection: Selection;
-  private readonly sums: TallySums;
+  private readonly tally: BatchTally;
   private readonly spill: IdentitySpill | null;
   private kept: Events[] | null;
   private keptBytes = 0;
 
   constructor(private readonly options: BeginReading) {
     const { plan, scratch, writer, keep } = options;
-    this.selection = new Selection(plan, mostRuns(plan));
-    this.sums = new TallySums(plan);
+    this.tally = new BatchTally(plan);
     this.spill = plan.at.event < 0 ? null : new IdentitySpill(scratch, writer);
     this.kept = keep > 0 ? [] : null;
   }
@@ -100,10 +99,8 @@ class Reading {
     const placeOf = (place: number): string => placeInUnit(unit, reader.places, place);
     try {
       for await (const batch of reader.read(unit, plan.needs)) {
-        const { events, rejects } = this.selection.select(batch, placeOf);
-        this.sums.add(events, this.selection.runLabels);
-        const identities = this.selection.identitiesOf(events);
-        if (identities) this.spill!.add(identities, events.rows, ordinal);
+        const { events, rejects, identity } = this.tally.add(batch, placeOf);
+        if (identity) this.spill!.add(identity, events.rows, ordinal);
         if (rejects.length > 0) rejectsFile.append(rejects);
         this.keep(events);
         done.placesPassed = batch.placesPassed;
@@ -125,20 +122,14 @@ class Reading {
 
   finish(): ReadingDone {
     this.spill?.finish();
-    const sums = this.sums.toPlain(false);
-    const { ledger } = this.selection;
-    // The selection saw every row, the sums what it selected: together they are the ledger of this worker.
-    sums.ledger.read = ledger.read;
-    sums.ledger.cut = ledger.cut;
-    sums.ledger.rejected = ledger.rejected;
-    sums.ledger.reasons = ledger.reasons;
-    return { sums, cutPassed: this.selection.cutPassed, kept: this.kept !== null };
+    const sums = this.tally.finishedSums().toPlain(false);
+    return { sums, cutPassed: this.tally.selection.cutPassed, kept: this.kept !== null };
   }
 
   /** Tallies the kept events again under other axes. The ledger holds only what is tallied. */
   retally(plan: TallyPlan): PlainTallySums {
     const sums = new TallySums(plan);
-    for (const events of this.keptEvents()) sums.add(events, this.selection.runLabels);
+    for (const events of this.keptEvents()) sums.add(events, this.tally.selection.runLabels);
     return sums.toPlain(false);
   }
 

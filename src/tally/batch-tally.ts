@@ -4,9 +4,9 @@ import { Selection, type Events } from './selection';
 import type { Duplicates, Tally } from './tally';
 import { mostRuns, TallySums } from './tally-sums';
 
-/** Selects and bins batches in one thread: the whole way from rows to a tally for a program that has no workers. */
+/** Selects and bins batches: the whole way from rows to a tally, in one thread or in each of several. */
 export class BatchTally {
-  private readonly selection: Selection;
+  readonly selection: Selection;
   private readonly sums: TallySums;
 
   constructor(plan: TallyPlan) {
@@ -15,22 +15,29 @@ export class BatchTally {
   }
 
   /**
-   * Takes one batch; returns its rejected rows and the identities of its events (`null` where none is read).
+   * Takes one batch; returns its events, its rejected rows, and the identities of the events (`null` where none is read).
    * `placeOf` names a row's place in errors.
    */
   add(
     batch: Batch,
     placeOf: (place: number) => string,
-  ): { rejects: Reject[]; rows: number; identity: Events['identity'] } {
+  ): { events: Events; rejects: Reject[]; identity: Events['identity'] } {
     const { events, rejects } = this.selection.select(batch, placeOf);
     this.sums.add(events, this.selection.runLabels);
-    return { rejects, rows: events.rows, identity: this.selection.identitiesOf(events) };
+    return { events, rejects, identity: this.selection.identitiesOf(events) };
   }
 
   /** The finished tally. Nothing may be added after it. */
   finish(duplicates: Duplicates | null): Tally {
+    return this.finishedSums().finish(duplicates);
+  }
+
+  /**
+   * The sums with the whole ledger: the selection saw every row, the sums what it selected. Nothing may be added after it.
+   */
+  finishedSums(): TallySums {
     const { read, cut, rejected, reasons } = this.selection.ledger;
     Object.assign(this.sums.ledger, { read, cut, rejected, reasons });
-    return this.sums.finish(duplicates);
+    return this.sums;
   }
 }

@@ -53,8 +53,8 @@ async function readUnits(
     const reader = readerOfFormat(unit.format);
     for await (const batch of reader.read(unit, plan.needs, signal)) {
       stopIfCancelled(signal);
-      const { rejects, rows, identity } = sums.add(batch, (place) => placeName(unit, place));
-      if (identity) spill?.add(identity, rows, ordinal);
+      const { events, rejects, identity } = sums.add(batch, (place) => placeName(unit, place));
+      if (identity) spill?.add(identity, events.rows, ordinal);
       if (onReject) for (const reject of rejects) onReject(unit.name, reject);
     }
   }

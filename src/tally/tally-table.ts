@@ -28,10 +28,10 @@ export function tallyTable(study: Study, columns: Record<string, EventColumn>): 
     placesPassed: rows,
   };
   const sums = new BatchTally(plan);
-  const { rejects, rows: events, identity } = sums.add(batch, rowName);
+  const { events, rejects, identity } = sums.add(batch, rowName);
   if (!identity) return { tally: sums.finish(null), rejects };
-  const records = new Uint32Array(events * WORDS);
-  for (let i = 0; i < events; i++)
+  const records = new Uint32Array(events.rows * WORDS);
+  for (let i = 0; i < events.rows; i++)
     records.set([identity.high[i]!, identity.low[i]!, 0, identity.places[i]!], i * WORDS);
   return { tally: sums.finish(findDuplicates([records], (_, place) => rowName(place))), rejects };
 }
