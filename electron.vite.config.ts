@@ -1,6 +1,7 @@
 import { resolve } from 'node:path';
 import { svelte } from '@sveltejs/vite-plugin-svelte';
 import { defineConfig } from 'electron-vite';
+import { assembly } from './.ci/assembly.ts';
 
 const at = (path: string): string => resolve(import.meta.dirname, path);
 const worker = (name: string): string => at(`main/workers/${name}-worker.ts`);
@@ -30,6 +31,7 @@ const BUNDLED = [
 
 export default defineConfig({
   main: {
+    plugins: [assembly()],
     build: {
       target: 'node20',
       // Bundled, because a start of the command line would else read hundreds of small files.

@@ -24,7 +24,7 @@ const oneWay = ROOMS.map((room, index) => {
 });
 
 export default ts.config(
-  { ignores: ['out/', 'dist/', 'node_modules/', 'screens/', 'resources/loaders/'] },
+  { ignores: ['out/', 'dist/', 'node_modules/', 'screens/', 'resources/loaders/', '**/*.as.ts'] },
   js.configs.recommended,
   ...ts.configs.recommended,
   ...svelte.configs.recommended,

@@ -1,6 +1,8 @@
 import { defineConfig } from 'vitest/config';
+import { assembly } from './.ci/assembly.ts';
 
 export default defineConfig({
+  plugins: [assembly()],
   test: {
     include: ['tests/**/*.test.ts'],
     reporters: ['default', './tests/closing-line.ts'],

@@ -75,6 +75,16 @@ function skipBlanks(bytes: Uint8Array, from: number, to: number, delimiter: numb
   return p;
 }
 
+/** Whether there is nothing but blanks in `bytes[from, to)`. An empty field in quotes is something. */
+export function isBlank(bytes: Uint8Array, from: number, to: number): boolean {
+  return trimmedStart(bytes, from, to) === to;
+}
+
+/** The begin of `bytes[from, to)` without blanks. */
+export function trimmedStart(bytes: Uint8Array, from: number, to: number): number {
+  return skipBlanks(bytes, from, to, -1);
+}
+
 /** The end of `bytes[from, to)` without blanks. */
 export function trimmedEnd(bytes: Uint8Array, from: number, to: number): number {
   let end = to;

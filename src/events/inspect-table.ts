@@ -3,7 +3,7 @@ import { stopIfCancelled } from '../study/input-error';
 import type { FileFacts } from './batch';
 import { sizeOf } from './byte-source';
 import { Census } from './census';
-import { Fields } from './fields';
+import { Fields, isBlank } from './fields';
 import { LineBlocks, LONGEST_LINE, type Block } from './lines';
 import { compressionOf, openBytes } from './open-bytes';
 import { readHead, type TableHead } from './table-head';
@@ -64,7 +64,7 @@ class TableCensus {
   private addLine(bytes: Uint8Array, from: number, to: number): void {
     const { columns, fields } = this;
     const found = to - from > LONGEST_LINE ? 0 : fields.cut(bytes, from, to, this.delimiter);
-    if (found === 1 && fields.starts[0] === fields.ends[0]) return;
+    if (found === 1 && isBlank(bytes, from, to)) return;
     if (found !== columns.length) {
       this.rejected += 1;
       return;

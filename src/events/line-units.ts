@@ -13,8 +13,12 @@ export const LEAST_PIECE = 4_194_304;
 export interface LineParser {
   /** Physical lines passed. */
   readonly place: number;
+  /** Where the lines must stand, if it matters: of length `ROOM`. */
+  readonly room?: Buffer | undefined;
   /** Parses whole lines of `bytes[from, to)` until the builder is full; where it stopped. */
   parse(bytes: Uint8Array, from: number, to: number): number;
+  /** Gives back what it works with, batches included. */
+  close?(): void;
 }
 
 /** Cuts a plain text file into at most `pieces` byte ranges of about the same size; a compressed one is one. */
@@ -48,7 +52,7 @@ export async function* readLines(
     return builder.take(bytes, parser.place);
   };
   try {
-    const blocks = new LineBlocks(source, unit.name);
+    const blocks = new LineBlocks(source, unit.name, parser.room);
     for (let block = await blocks.next(); block !== null; block = await blocks.next()) {
       for (let at = 0; at < block.to;) {
         at = parser.parse(block.bytes, at, block.to);
@@ -63,6 +67,7 @@ export async function* readLines(
     yield take();
   } finally {
     source.close();
+    parser.close?.();
   }
 }
 

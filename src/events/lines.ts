@@ -10,6 +10,9 @@ export const LONGEST_LINE = 1_048_576;
 const STEP = 262_144;
 const LINE_FEED = 10;
 
+/** Bytes that `LineBlocks` works in: a longest line, a step behind it, and a line feed that the file may lack. */
+export const ROOM = LONGEST_LINE + STEP + 2;
+
 /** Whole lines, each ended by a line feed, in `bytes[0, to)`. The bytes are overwritten by the next block. */
 export interface Block {
   bytes: Uint8Array;
@@ -18,11 +21,10 @@ export interface Block {
 
 /**
  * Cuts a stream of bytes into blocks of whole lines. A last line without a line feed gets one. A line longer than
- * `LONGEST_LINE` arrives cut to one byte more than that, so that its reader can tell. Throws `InputError` at a NUL byte:
+ * `LONGEST_LINE` arrives cut to one byte more than that, so that its reader can tell. Works in `bytes`, of length `ROOM`. Throws `InputError` at a NUL byte:
  * no text table holds one.
  */
 export class LineBlocks {
-  private readonly bytes = Buffer.allocUnsafe(LONGEST_LINE + STEP + 2);
   private to = 0;
   private filled = 0;
   private passed = 0;
@@ -30,6 +32,7 @@ export class LineBlocks {
   constructor(
     private readonly source: ByteSource,
     private readonly name: string,
+    private readonly bytes: Buffer = Buffer.allocUnsafe(ROOM),
   ) {}
 
   async next(): Promise<Block | null> {

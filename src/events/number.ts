@@ -99,40 +99,6 @@ export function readDecimal(bytes: Uint8Array, from: number, to: number, into: F
   return p;
 }
 
-/**
- * The quick way of most fields: a number of at most nine digits, without exponent, that begins at `from` and is ended by
- * a byte that is no part of a number (a line feed at the latest: there is no bound). Writes it into `into[at]` and returns
- * the place behind it; `from`, with nothing written, where the number is for `readDecimal`. Correctly rounded: one
- * division of two exact integers.
- */
-export function readShort(bytes: Uint8Array, from: number, into: Float64Array, at: number): number {
-  let p = from;
-  const negative = bytes[p] === MINUS;
-  if (negative) p++;
-  const begin = p;
-  let whole = 0;
-  let digit = bytes[p] - ZERO;
-  while (digit >>> 0 <= 9) {
-    whole = (Math.imul(whole, 10) + digit) | 0;
-    digit = bytes[++p] - ZERO;
-  }
-  let digits = p - begin;
-  let scale = 0;
-  if (digit === DOT - ZERO) {
-    const first = ++p;
-    digit = bytes[p] - ZERO;
-    while (digit >>> 0 <= 9) {
-      whole = (Math.imul(whole, 10) + digit) | 0;
-      digit = bytes[++p] - ZERO;
-    }
-    scale = p - first;
-    digits += scale;
-  }
-  if (digits === 0 || digits > INTEGER_DIGITS || ((digit + ZERO) | 32) === EXPONENT) return from;
-  into[at] = (negative ? -whole : whole) / EXACT_POWERS[scale];
-  return p;
-}
-
 /** The end of the exponent (`e`, a sign, digits) that begins at `from`; `from` where there are no digits. */
 function readExponent(bytes: Uint8Array, from: number, to: number): number {
   const begin = bytes[from + 1] === MINUS || bytes[from + 1] === PLUS ? from + 2 : from + 1;

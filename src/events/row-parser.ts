@@ -1,10 +1,12 @@
 import type { Need } from './batch';
 import type { BatchBuilder } from './batch-builder';
 import { decode } from './dictionary';
-import { Fields, trimmedEnd } from './fields';
+import { Fields, isBlank, trimmedEnd, trimmedStart } from './fields';
 import { identify } from './identity';
+import type { LineParser } from './line-units';
 import { LONGEST_LINE } from './lines';
-import { isMissing, parseNumber, readDecimal, readShort } from './number';
+import { isMissing, parseNumber, readDecimal } from './number';
+import { LEFTOVER, NUMBER, OTHER, QuickLines, SKIPPED } from './quick-lines';
 
 /** Where the columns of a delimited table stand: plain data, found once when the file is planned. */
 export interface Layout {
@@ -17,37 +19,33 @@ export interface Layout {
   positions: number[];
 }
 
-const TAB = 9;
 const LINE_FEED = 10;
 const RETURN = 13;
-const SPACE = 32;
-const QUOTE = 34;
 
-const SKIPPED = 0;
-const NUMBER = 1;
-const OTHER = 2;
+/** Where the quick way gets fewer lines than this, it costs more than it saves: the next ones go the careful way. */
+const FEW = 16;
+const LONGEST_PAUSE = 255;
 
 /**
- * Turns lines of a delimited table into rows of a batch. Two ways through a line: the quick one reads each byte once and
- * gives up at anything unusual; the careful one then reads that line again, and alone decides what is rejected and why.
+ * Turns lines of a delimited table into rows of a batch. Two ways through a line: the quick one gives up at anything
+ * unusual; the careful one then reads that line again, and alone decides what is rejected and why.
  */
-export class RowParser {
+export class RowParser implements LineParser {
   /** Physical lines passed. */
   place = 0;
-  private readonly kinds: Uint8Array;
   private readonly needsOf: number[][];
-  /** 1 for a field that held a number too long for the quickest way. */
-  private readonly long: Uint8Array;
-  /** 1 for each byte at which a plain field ends or is no longer plain, and for each that is set aside around one. */
-  private readonly stops = new Uint8Array(256);
-  /** The highest byte that may end a field: most bytes of a table are above it, and need no look into `stops`. */
-  private readonly highest: number;
-  private readonly blanks = new Uint8Array(256);
+  private readonly kinds: Uint8Array;
   private readonly fields: Fields;
-  /** Fields of any need; those of them that are not just one number; those of these that are a number too. */
+  /** Fields of any need. */
   private readonly needed: number[];
-  private readonly others: number[];
-  private readonly mixed: number[];
+  /** 1 for each field of which a number is needed, and for each of which a text. */
+  private readonly asNumber: Uint8Array;
+  private readonly asText: Uint8Array;
+  /** `null` where the system grants no memory for it: then every line goes the careful way. */
+  private readonly quick: QuickLines | null;
+  /** Lines that go the careful way after the quick one got nowhere, and those of them that are still to come. */
+  private pause = 0;
+  private unquick = 0;
 
   /** The first `linesToSkip` lines are passed over. */
   constructor(
@@ -58,18 +56,26 @@ export class RowParser {
   ) {
     const { header, positions, delimiter } = layout;
     this.needsOf = header.map((_, field) => needs.flatMap((_need, i) => (positions[i] === field ? [i] : [])));
+    this.asNumber = Uint8Array.from(this.needsOf, (list) => Number(list.some((i) => needs[i].as === 'number')));
+    this.asText = Uint8Array.from(this.needsOf, (list) => Number(list.some((i) => needs[i].as !== 'number')));
     this.kinds = Uint8Array.from(this.needsOf, (list) => {
       if (list.length === 0) return SKIPPED;
       return list.length === 1 && needs[list[0]].as === 'number' ? NUMBER : OTHER;
     });
     this.needed = header.flatMap((_, field) => (this.needsOf[field].length > 0 ? [field] : []));
-    this.others = this.needed.filter((field) => this.kinds[field] === OTHER);
-    this.mixed = this.others.filter((field) => this.needsOf[field].some((i) => needs[i].as === 'number'));
     this.fields = new Fields(header.length);
-    this.long = new Uint8Array(header.length);
-    for (const blank of [SPACE, TAB]) this.blanks[blank] = blank === delimiter ? 0 : 1;
-    for (const stop of [delimiter, LINE_FEED, RETURN, QUOTE]) this.stops[stop] = 1;
-    this.highest = this.stops.lastIndexOf(1);
+    this.quick = QuickLines.over(this.kinds, delimiter, builder.capacity);
+    this.kinds.forEach((kind, field) => {
+      if (this.quick && kind === NUMBER) builder.numbers[this.needsOf[field][0]] = this.quick.numbers[field];
+    });
+  }
+
+  get room(): Buffer | undefined {
+    return this.quick?.room;
+  }
+
+  close(): void {
+    this.quick?.close();
   }
 
   /** Parses whole lines of `bytes[from, to)` until the builder is full; where it stopped. */
@@ -82,87 +88,58 @@ export class RowParser {
         line = bytes.indexOf(LINE_FEED, line) + 1;
         continue;
       }
-      line = this.quickly(bytes, line, to);
+      if (this.quick && this.unquick-- <= 0) line = this.quickly(this.quick, bytes, line, to);
       if (line < to && !this.builder.full) line = this.carefully(bytes, line);
     }
     return line;
   }
 
-  /**
-   * Parses lines as long as nothing about them is unusual; the begin of the first line not parsed. Every loop below ends
-   * at a line feed at the latest, which stands at `to - 1`.
-   */
-  private quickly(bytes: Uint8Array, from: number, to: number): number {
-    const { kinds, needsOf, stops, blanks, long, builder } = this;
-    const { numbers, places, capacity } = builder;
-    const { delimiter } = this.layout;
-    const { highest } = this;
-    const { starts, ends } = this.fields;
-    const last = kinds.length - 1;
-    let { rows } = builder;
-    let { place } = this;
-    let line = from;
-    lines: while (line < to && rows < capacity) {
-      let p = line;
-      for (let field = 0; ; field++) {
-        if (kinds[field] === SKIPPED) {
-          if (bytes[p] === QUOTE) p = behindQuoted(bytes, p);
-          else p = nextStop(bytes, p, highest, stops);
-        } else if (kinds[field] === NUMBER) {
-          while (blanks[bytes[p]] !== 0) p++;
-          const begin = p;
-          const into = numbers[needsOf[field][0]];
-          if (long[field] === 0) p = readShort(bytes, begin, into, rows);
-          if (p === begin) {
-            p = readDecimal(bytes, begin, to, into, rows);
-            // One long number foretells others: none of them is to be read twice.
-            if (p > begin) long[field] = 1;
-          }
-          if (p === begin || stops[bytes[p]] === 0) {
-            while (stops[bytes[p]] === 0) p++;
-            const end = trimmedEnd(bytes, begin, p);
-            const value = parseNumber(bytes, begin, end);
-            if (value !== value && !isMissing(bytes, begin, end)) break lines;
-            into[rows] = value;
-          }
-        } else {
-          while (blanks[bytes[p]] !== 0) p++;
-          starts[field] = p;
-          if (bytes[p] === QUOTE) p = behindQuoted(bytes, p);
-          else while (stops[bytes[p]] === 0) p++;
-          ends[field] = p;
-        }
-        if (field === last) break;
-        if (bytes[p] !== delimiter) break lines;
-        p++;
-      }
-      // A line of a one-column table that ends in a blank may be blank altogether.
-      if (last === 0 && bytes[p - 1] <= SPACE) break;
-      if (p - line > LONGEST_LINE) break;
-      if (bytes[p] === RETURN) p++;
-      if (bytes[p] !== LINE_FEED || !this.fillOthers(bytes, rows)) break;
-      line = p + 1;
-      places[rows++] = ++place;
+  /** Parses lines as long as nothing about them is unusual; the begin of the first line not parsed. */
+  private quickly(quick: QuickLines, bytes: Uint8Array, from: number, to: number): number {
+    const { builder } = this;
+    let line = quick.parse(from, to, builder.rows);
+    let { rows } = quick;
+    const bad = this.fillLeftNumbers(quick, bytes);
+    if (bad >= 0) {
+      rows = bad;
+      line = quick.begins[bad];
     }
-    builder.rows = rows;
-    this.place = place;
+    this.fillLeftTexts(quick, bytes, rows);
+    this.pause = rows - builder.rows < FEW ? Math.min(2 * this.pause + 1, LONGEST_PAUSE) : 0;
+    this.unquick = this.pause;
+    while (builder.rows < rows) builder.places[builder.rows++] = ++this.place;
     return line;
   }
 
-  /** Writes the fields left to the end of a quick line; false where a number was wanted and there is none. */
-  private fillOthers(bytes: Uint8Array, row: number): boolean {
-    const { starts, ends } = this.fields;
-    const { others, mixed } = this;
-    for (let i = 0; i < others.length; i++) unquote(bytes, others[i], starts, ends);
-    for (let i = 0; i < mixed.length; i++) if (!this.fillNumbers(bytes, mixed[i], row)) return false;
-    for (let i = 0; i < others.length; i++) this.fillTexts(bytes, others[i], row);
-    return true;
+  /** Writes the numbers that the quick way left; the first row that lacks one, -1 where none does. */
+  private fillLeftNumbers({ left, leftovers }: QuickLines, bytes: Uint8Array): number {
+    const { asNumber, kinds, needsOf, builder } = this;
+    for (let at = 0; at < left * LEFTOVER; at += LEFTOVER) {
+      const field = leftovers[at + 1];
+      if (asNumber[field] === 0) continue;
+      const row = leftovers[at];
+      const from = trimmedStart(bytes, leftovers[at + 2], leftovers[at + 3]);
+      const to = trimmedEnd(bytes, from, leftovers[at + 3]);
+      const alone = kinds[field] === NUMBER && from < to;
+      if (alone && readDecimal(bytes, from, to, builder.numbers[needsOf[field][0]], row) === to) continue;
+      if (!this.fillNumbers(bytes, field, from, to, row)) return row;
+    }
+    return -1;
+  }
+
+  /** Writes the labels and identities of rows before `rows` that the quick way left: last, for a label once met stays. */
+  private fillLeftTexts({ left, leftovers }: QuickLines, bytes: Uint8Array, rows: number): void {
+    const { asText } = this;
+    for (let at = 0; at < left * LEFTOVER && leftovers[at] < rows; at += LEFTOVER) {
+      const field = leftovers[at + 1];
+      if (asText[field] === 0) continue;
+      const from = trimmedStart(bytes, leftovers[at + 2], leftovers[at + 3]);
+      this.fillTexts(bytes, field, from, trimmedEnd(bytes, from, leftovers[at + 3]), leftovers[at]);
+    }
   }
 
   /** Writes a field for each need of a number; false where it is none. */
-  private fillNumbers(bytes: Uint8Array, field: number, row: number): boolean {
-    const from = this.fields.starts[field];
-    const to = this.fields.ends[field];
+  private fillNumbers(bytes: Uint8Array, field: number, from: number, to: number, row: number): boolean {
     for (const i of this.needsOf[field]) {
       if (this.needs[i].as !== 'number') continue;
       const value = parseNumber(bytes, from, to);
@@ -172,11 +149,9 @@ export class RowParser {
     return true;
   }
 
-  /** Writes a field for each need of a label or identity: last, for a label once met stays. */
-  private fillTexts(bytes: Uint8Array, field: number, row: number): void {
+  /** Writes a field for each need of a label or identity. */
+  private fillTexts(bytes: Uint8Array, field: number, from: number, to: number, row: number): void {
     const { codes, high, low, dictionaries } = this.builder;
-    const from = this.fields.starts[field];
-    const to = this.fields.ends[field];
     for (const i of this.needsOf[field]) {
       const { as } = this.needs[i];
       if (as === 'text') codes[i][row] = dictionaries[i].code(bytes, from, to);
@@ -196,7 +171,7 @@ export class RowParser {
     }
     const { header, delimiter } = this.layout;
     const found = this.fields.cut(bytes, from, to, delimiter);
-    if (isBlank(this.fields, found)) return feed + 1;
+    if (found === 1 && isBlank(bytes, from, to)) return feed + 1;
     if (found < 0) {
       builder.reject(place, header[-1 - found] ?? null, excerpt(bytes, from, to), 'quote not closed');
     } else if (found !== header.length) {
@@ -209,50 +184,22 @@ export class RowParser {
   private finishRow(bytes: Uint8Array, place: number): void {
     const { fields, builder, needed } = this;
     for (const field of needed) {
-      if (!this.fillNumbers(bytes, field, builder.rows)) {
-        const value = excerpt(bytes, fields.starts[field], fields.ends[field]);
+      const [from, to] = [fields.starts[field], fields.ends[field]];
+      if (!this.fillNumbers(bytes, field, from, to, builder.rows)) {
+        const value = excerpt(bytes, from, to);
         builder.reject(place, this.layout.header[field], value, 'not a number');
         return;
       }
     }
-    for (const field of needed) this.fillTexts(bytes, field, builder.rows);
+    for (const field of needed) {
+      this.fillTexts(bytes, field, fields.starts[field], fields.ends[field], builder.rows);
+    }
     builder.places[builder.rows++] = place;
   }
-}
-
-/**
- * The place behind the quoted field that opens at `open`; `open` itself where a doubled quote or the line's end comes
- * first: no field ends there, so that the line is left to the careful way.
- */
-function behindQuoted(bytes: Uint8Array, open: number): number {
-  let p = open + 1;
-  while (bytes[p] !== QUOTE && bytes[p] !== LINE_FEED) p++;
-  return bytes[p] === QUOTE && bytes[p + 1] !== QUOTE ? p + 1 : open;
-}
-
-/** Sets aside the quotes around a field, and the blanks at its ends. */
-function unquote(bytes: Uint8Array, field: number, starts: Int32Array, ends: Int32Array): void {
-  const quoted = bytes[starts[field]] === QUOTE && ends[field] > starts[field];
-  let from = quoted ? starts[field] + 1 : starts[field];
-  const to = trimmedEnd(bytes, from, quoted ? ends[field] - 1 : ends[field]);
-  while (from < to && (bytes[from] === SPACE || bytes[from] === TAB)) from++;
-  starts[field] = from;
-  ends[field] = to;
-}
-
-function isBlank(fields: Fields, found: number): boolean {
-  return found === 1 && fields.starts[0] === fields.ends[0];
 }
 
 const LONGEST_EXCERPT = 100;
 
 function excerpt(bytes: Uint8Array, from: number, to: number): string {
   return decode(bytes.subarray(from, Math.min(to, from + LONGEST_EXCERPT)));
-}
-
-/** The place of the first byte from `p` on that may end a field. */
-function nextStop(bytes: Uint8Array, p: number, highest: number, stops: Uint8Array): number {
-  let byte = bytes[p];
-  while (byte > highest || stops[byte] === 0) byte = bytes[++p];
-  return p;
 }

@@ -87,6 +87,11 @@ describe('a table with a header', () => {
     ]);
   });
 
+  test('of one column has a row where nothing stands in quotes: that is a missing value', async () => {
+    const { rows } = await read('t\n""\n\n"" \n" "\n', 't');
+    expect(rows.map(([place]) => place)).toEqual([2, 4, 5]);
+  });
+
   test('takes NULL, NaN and nothing as missing, in numbers, labels and identities alike', async () => {
     const { rows, rejects } = await read('t,run,id\nNULL,null,nan\nNaN,,\n,nan,NULL\n', 't', 'run:text', 'id:identity');
     expect(rejects).toEqual([]);

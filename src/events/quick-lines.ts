@@ -1,0 +1,139 @@
+import { LONGEST_LINE, ROOM } from './lines';
+import code from './quick-lines.as?assembly';
+
+/** What the quick way does with a field: passes over it, reads its number, or leaves it to the caller. */
+export const SKIPPED = 0;
+export const NUMBER = 1;
+export const OTHER = 2;
+
+/** A field left to the caller: row, field, and its bytes `[begin, end)`, quotes set aside. */
+export const LEFTOVER = 4;
+
+/** Bytes whose stops are found at a time: their list stays in the first-level cache. */
+const STRETCH = 8192;
+/** Room in a stretch for each field more: lines of ordinary numbers fit whole, however many columns there are. */
+const STRETCH_A_FIELD = 32;
+/** Bytes that may be read before and behind the lines. */
+const MARGIN = 64;
+const PAGE = 65_536;
+/** Powers of ten that are exact as doubles, from 10^0. */
+const POWERS = 23;
+
+interface Exports {
+  begin(...facts: number[]): void;
+  parse(from: number, to: number, firstRow: number): number;
+  rows: WebAssembly.Global;
+  left: WebAssembly.Global;
+}
+
+let module: WebAssembly.Module | null = null;
+/** Memories given back: a file is read in many units, and each memory takes gigabytes of addresses. */
+const spares: WebAssembly.Memory[] = [];
+
+/**
+ * The quick way through lines of a delimited table (`quick-lines.as.ts`), and the memory it works in. A line is usual
+ * that has the right number of fields, no doubled quote, and nothing around a quoted field.
+ */
+export class QuickLines {
+  /** Where the lines must stand. */
+  readonly room: Buffer;
+  /** Where the numbers of each field of kind `NUMBER` are put, one a row; empty for the other fields. */
+  readonly numbers: Float64Array[];
+  /** Where each line began in `room`; one a row. */
+  readonly begins: Int32Array;
+  /** The fields left to the caller, `LEFTOVER` entries each, in the order of the lines. */
+  readonly leftovers: Int32Array;
+  private readonly memory: WebAssembly.Memory;
+  private readonly exports: Exports;
+
+  /**
+   * For a table whose fields are of the given kinds, `capacity` rows at a time. `null` where the system grants no memory
+   * for it (it takes gigabytes of addresses, though few are ever used).
+   */
+  static over(kinds: Uint8Array, delimiter: number, capacity: number): QuickLines | null {
+    try {
+      return new QuickLines(kinds, delimiter, capacity);
+    } catch (error) {
+      if (error instanceof RangeError) return null;
+      throw error;
+    }
+  }
+
+  private constructor(kinds: Uint8Array, delimiter: number, capacity: number) {
+    const stretch = Math.min(LONGEST_LINE, STRETCH + STRETCH_A_FIELD * kinds.length);
+    const needed = kinds.filter((kind) => kind !== SKIPPED).length;
+    let bytes = 0;
+    const place = (size: number): number => {
+      const at = Math.ceil(bytes / MARGIN) * MARGIN;
+      bytes = at + size;
+      return at;
+    };
+    const roomAt = place(ROOM + 2 * MARGIN) + MARGIN;
+    const kindsAt = place(kinds.length);
+    const targetsAt = place(4 * kinds.length);
+    const powersAt = place(8 * POWERS);
+    // One stop more than there can be: they are written by twos.
+    const stopsAt = place(4 * (stretch + 1));
+    const beginsAt = place(4 * capacity);
+    const leftoversAt = place(4 * LEFTOVER * needed * capacity);
+    const targets = Array.from(kinds, (kind) => (kind === NUMBER ? place(8 * capacity) : 0));
+
+    this.memory = memoryOf(bytes);
+    const { buffer } = this.memory;
+    this.room = Buffer.from(buffer, roomAt, ROOM);
+    this.numbers = targets.map((at) => new Float64Array(buffer, at, at === 0 ? 0 : capacity));
+    this.begins = new Int32Array(buffer, beginsAt, capacity);
+    this.leftovers = new Int32Array(buffer, leftoversAt, LEFTOVER * needed * capacity);
+    new Uint8Array(buffer, kindsAt, kinds.length).set(kinds);
+    new Uint32Array(buffer, targetsAt, kinds.length).set(targets);
+    new Float64Array(buffer, powersAt, POWERS).set(Array.from({ length: POWERS }, (_, k) => Number(`1e${k}`)));
+    module ??= new WebAssembly.Module(Buffer.from(code, 'base64'));
+    const { exports } = new WebAssembly.Instance(module, { env: { memory: this.memory } });
+    this.exports = exports as unknown as Exports;
+    this.exports.begin(
+      kinds.length,
+      delimiter,
+      capacity,
+      stretch,
+      roomAt,
+      kindsAt,
+      targetsAt,
+      stopsAt,
+      beginsAt,
+      leftoversAt,
+      powersAt,
+    );
+  }
+
+  /**
+   * Parses whole lines of `room[from, to)` into rows from `row` on while there is room and nothing about them is unusual;
+   * the begin of the first line not parsed.
+   */
+  parse(from: number, to: number, row: number): number {
+    return this.exports.parse(from, to, row);
+  }
+
+  /** Rows after the last call of `parse`, those before it included. */
+  get rows(): number {
+    return this.exports.rows.value as number;
+  }
+
+  /** Leftovers of the last call of `parse`. */
+  get left(): number {
+    return this.exports.left.value as number;
+  }
+
+  /** Gives the memory back: nothing of it may be used after this. */
+  close(): void {
+    spares.push(this.memory);
+  }
+}
+
+function memoryOf(bytes: number): WebAssembly.Memory {
+  const pages = Math.ceil(bytes / PAGE);
+  const spare = spares.pop();
+  if (spare === undefined) return new WebAssembly.Memory({ initial: pages });
+  const missing = pages - spare.buffer.byteLength / PAGE;
+  if (missing > 0) spare.grow(missing);
+  return spare;
+}
