@@ -1,7 +1,7 @@
 import type { Axis } from '../study/axis';
 
-/** Cells of the look-up grid a bin: enough that a cell rarely holds more than one edge. */
-const GRID_PER_BIN = 8;
+/** Cells of the look-up grid a bin: enough that a cell rarely holds an edge. */
+const GRID_PER_BIN = 16;
 /** Most edges in one grid cell that are searched one by one; beyond, the search halves. */
 const FEW = 4;
 

@@ -40,8 +40,11 @@ export class Selection {
   private readonly runCodes = new Map<string, number>();
   private readonly keysOfRuns: { high: number; low: number }[] = [];
   private readonly tests: CutTest[];
+  /** Room for the rows of a batch: how each stands, which satisfy a cut, which are kept, and the events kept. */
   private status = new Uint8Array(0);
   private pass = new Uint8Array(0);
+  private list = new Int32Array(0);
+  private kept: Events | null = null;
 
   constructor(
     private readonly plan: TallyPlan,
@@ -53,7 +56,7 @@ export class Selection {
 
   /**
    * Selects the events of one batch and returns them with every rejected row of it, those the reader found included.
-   * The events may share the arrays of the batch. Throws `InputError` for a tag that the study does not list;
+   * The events may share the arrays of the batch, or those of the events before: whoever keeps them copies them. Throws `InputError` for a tag that the study does not list;
    * `placeOf` names a row's place in it.
    */
   select(batch: Batch, placeOf: (place: number) => string): { events: Events; rejects: Reject[] } {
@@ -63,7 +66,8 @@ export class Selection {
     this.roomFor(batch.rows);
     const cut = this.applyCuts(batch);
     const doubtful = this.markUnusable(all, batch.rows);
-    const events = cut + doubtful === 0 ? all : this.keepUsable(batch, all, rejects, placeOf);
+    if (doubtful > 0) this.judge(batch, all, rejects, placeOf);
+    const events = cut + doubtful === 0 ? all : this.keepUsable(all, batch.rows);
     ledger.read += batch.rows + batch.rejects.length;
     ledger.cut += cut;
     ledger.rejected += rejects.length;
@@ -91,6 +95,8 @@ export class Selection {
     if (this.status.length < rows) {
       this.status = new Uint8Array(rows);
       this.pass = new Uint8Array(rows);
+      this.list = new Int32Array(rows);
+      this.kept = null;
     }
     this.status.fill(USABLE, 0, rows);
   }
@@ -101,14 +107,15 @@ export class Selection {
     this.tests.forEach((test, c) => {
       test(batch.columns[this.plan.at.cuts[c]!]!, batch.rows, pass);
       let passed = 0;
+      // Without a branch: which rows pass is hard to foretell.
       for (let i = 0; i < batch.rows; i++) {
         passed += pass[i]!;
-        if (pass[i] === 0) status[i] = CUT;
+        status[i]! |= CUT * (1 - pass[i]!);
       }
       this.cutPassed[c]! += passed;
     });
     let cut = 0;
-    if (this.tests.length > 0) for (let i = 0; i < batch.rows; i++) if (status[i] === CUT) cut++;
+    if (this.tests.length > 0) for (let i = 0; i < batch.rows; i++) cut += status[i]!;
     return cut;
   }
 
@@ -135,17 +142,38 @@ export class Selection {
     return marked;
   }
 
-  /** Copies the usable rows and says what is wrong with the doubtful ones. */
-  private keepUsable(batch: Batch, all: Events, rejects: Reject[], placeOf: (place: number) => string): Events {
+  /** Decides about the doubtful rows, and says what is wrong with those that are of no use. */
+  private judge(batch: Batch, all: Events, rejects: Reject[], placeOf: (place: number) => string): void {
     const { status } = this;
-    const kept = emptyEvents(all);
     for (let i = 0; i < batch.rows; i++) {
-      if (status[i] === CUT) continue;
-      const fault = status[i] === DOUBTFUL ? this.faultOf(batch, all, i, placeOf) : null;
+      if (status[i] !== DOUBTFUL) continue;
+      const fault = this.faultOf(batch, all, i, placeOf);
+      status[i] = fault ? REJECTED : USABLE;
       if (fault) rejects.push({ place: batch.places[i]!, ...fault });
-      else copyEvent(all, i, kept);
     }
-    return kept;
+  }
+
+  /** Copies the usable rows. */
+  private keepUsable(all: Events, rows: number): Events {
+    const { status, list } = this;
+    let count = 0;
+    for (let i = 0; i < rows; i++) {
+      list[count] = i;
+      count += status[i] === USABLE ? 1 : 0;
+    }
+    this.kept ??= roomLike(all, list.length);
+    const { truth, reco, weight, run, identity } = this.kept;
+    gather(all.truth, list, count, truth);
+    gather(all.reco, list, count, reco);
+    if (weight) gather(all.weight!, list, count, weight);
+    if (run) gather(all.run!, list, count, run);
+    if (identity) {
+      gather(all.identity!.high, list, count, identity.high);
+      gather(all.identity!.low, list, count, identity.low);
+      gather(all.identity!.places, list, count, identity.places);
+    }
+    this.kept.rows = count;
+    return this.kept;
   }
 
   /** What is wrong with a doubtful row; `null` for one that turns out to be usable (counted as unmatched). */
@@ -216,8 +244,9 @@ export function tooManyRuns(plan: TallyPlan, most: number): InputError {
 
 /** Where a row stands while its batch is selected. */
 const USABLE = 0;
-const DOUBTFUL = 1;
-const CUT = 2;
+const CUT = 1;
+const DOUBTFUL = 2;
+const REJECTED = 3;
 
 /** Marks a tag that the study does not list, until the cuts have had their say. */
 const UNLISTED = -1;
@@ -256,8 +285,8 @@ function isWeight(w: number): boolean {
   return size === 0 || (size >= LEAST_WEIGHT && size <= LARGEST_WEIGHT);
 }
 
-/** Room for as many events as there are in `like`, holding none. */
-function emptyEvents({ rows, weight, run, identity }: Events): Events {
+/** Room for `rows` events of the roles that `like` has, holding none. */
+function roomLike({ weight, run, identity }: Events, rows: number): Events {
   return {
     rows: 0,
     truth: new Float64Array(rows),
@@ -268,14 +297,11 @@ function emptyEvents({ rows, weight, run, identity }: Events): Events {
   };
 }
 
-function copyEvent(from: Events, i: number, to: Events): void {
-  const at = to.rows++;
-  to.truth[at] = from.truth[i]!;
-  to.reco[at] = from.reco[i]!;
-  if (to.weight) to.weight[at] = from.weight![i]!;
-  if (to.run) to.run[at] = from.run![i]!;
-  if (!to.identity) return;
-  to.identity.high[at] = from.identity!.high[i]!;
-  to.identity.low[at] = from.identity!.low[i]!;
-  to.identity.places[at] = from.identity!.places[i]!;
+function gather<A extends Float64Array | Int32Array | Uint32Array>(
+  from: A,
+  list: Int32Array,
+  count: number,
+  to: A,
+): void {
+  for (let k = 0; k < count; k++) to[k] = from[list[k]!]!;
 }

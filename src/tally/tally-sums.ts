@@ -85,7 +85,7 @@ export class TallySums {
     const { events } = this.halves;
     for (let i = 0; i < rows; i++) {
       const j = columns[i]!;
-      const half = truth[i]! >= middles[j]! ? 1 : 0;
+      const half = Number(truth[i]! >= middles[j]!);
       const k = outcomes[i]!;
       events[(j * 2 + half) * width + (k < 0 ? width - 1 : k)]!++;
     }
