@@ -17,7 +17,7 @@
  *   study) is the act of choosing for reading, `choosePlace` for writing; other calls refuse a path that was not
  *   chosen (`code: 'refused'`). Hidden files and folders cannot be chosen in the frame.
  */
-import { z } from 'zod';
+import { z } from '../src/study/zod';
 import type { BinMeasure, ColumnMeasure } from '../src/audit/findings';
 import type { Flag } from '../src/audit/flag';
 import type { FileFacts } from '../src/events/batch';

@@ -1,7 +1,7 @@
 import { closeSync, existsSync, mkdtempSync, openSync, readFileSync, readSync, rmSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join, resolve } from 'node:path';
-import { z } from 'zod';
+import { z } from '../src/study/zod';
 import { FolderInTheMaking } from '../src/handover/folder-in-the-making';
 import { readNpy } from '../src/handover/npy';
 import { InputError } from '../src/study/input-error';

@@ -1,4 +1,3 @@
-import './bench/without-eval';
 import { mount } from 'svelte';
 import { connect } from '../main/page/page-bridge';
 import './theme/tokens.css';

@@ -1,7 +1,7 @@
 import { mkdirSync, readFileSync, writeFileSync } from 'node:fs';
 import { dirname } from 'node:path';
 import type { Rectangle } from 'electron';
-import { z } from 'zod';
+import { z } from '../../src/study/zod';
 
 /** Smallest size at which the window is comfortable (look.md), and the one it first opens with. */
 export const LEAST = { width: 1024, height: 700 };

@@ -2,7 +2,7 @@ import { randomUUID } from 'node:crypto';
 import { existsSync, mkdirSync, readdirSync, readFileSync, renameSync, rmSync, writeFileSync } from 'node:fs';
 import { homedir } from 'node:os';
 import { join } from 'node:path';
-import { z } from 'zod';
+import { z } from '../../src/study/zod';
 import type { StudyInput } from '../../src/study/study';
 import type { Draft, RecentStudy } from '../bridge';
 

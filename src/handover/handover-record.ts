@@ -1,6 +1,6 @@
 import { readFileSync, statSync } from 'node:fs';
 import { basename, dirname, join } from 'node:path';
-import { z } from 'zod';
+import { z } from '../study/zod';
 import { InputError } from '../study/input-error';
 import { parseJson } from '../study/study';
 import { FORMAT_IDS } from './formats';

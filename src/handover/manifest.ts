@@ -1,4 +1,4 @@
-import { z } from 'zod';
+import { z } from '../study/zod';
 import { InputError } from '../study/input-error';
 import { parseJson } from '../study/study';
 

@@ -1,4 +1,4 @@
-import { z } from 'zod';
+import { z } from './zod';
 import { InputError } from './input-error';
 import { resolveAxis } from './resolve-axis';
 
