@@ -26,6 +26,7 @@ const BUNDLED = [
   'fzstd',
   'yauzl',
   'pend',
+  '@duckdb/node-api',
   ...STDLIB,
 ];
 

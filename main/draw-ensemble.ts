@@ -90,11 +90,16 @@ async function overBlocks(
   await withPool(pool, signal, async () => {
     const { columns, outcomes, shape, scale } = parameters;
     await pool.callAll('begin', { parameters: { columns, outcomes, shape, scale }, seed, replicas });
-    await pool.share(blocks, async (block, _, w) => {
-      await work(pool, block, w);
-      done += Math.min(BLOCK, replicas - block * BLOCK);
-      onProgress?.({ stage, done, total: replicas, unit: 'replicas' });
-    });
+    // Two blocks at once: none waits while the main thread writes the other.
+    await pool.share(
+      blocks,
+      async (block, _, w) => {
+        await work(pool, block, w);
+        done += Math.min(BLOCK, replicas - block * BLOCK);
+        onProgress?.({ stage, done, total: replicas, unit: 'replicas' });
+      },
+      2,
+    );
   });
 }
 

@@ -53,8 +53,8 @@ export interface ColumnPlan {
  */
 export function planColumn(shapes: Float64Array, scales: Float64Array | null, work: Workspace): ColumnPlan {
   shapes.forEach(checkShape);
-  const kinds = [(a: number) => a === 0.5, (a: number) => a === 1, (a: number) => a > 1, isBelow];
-  const groups = kinds.map((isKind) => [...shapes.keys()].filter((k) => isKind(shapes[k]!)));
+  const groups: number[][] = [[], [], [], []];
+  shapes.forEach((a, k) => a > 0 && groups[kindOf(a)]!.push(k));
   const [halves, ones, above, below] = groups.map((group) => group.length) as [number, number, number, number];
   const cells = Int32Array.from(groups.flat());
   const shape = Float64Array.from(cells, (k) => shapes[k]!);
@@ -79,8 +79,11 @@ export function planColumn(shapes: Float64Array, scales: Float64Array | null, wo
   };
 }
 
-function isBelow(shape: number): boolean {
-  return shape > 0 && shape < 1 && shape !== 0.5;
+/** Shapes of 1/2, of 1, above and below are drawn in different ways. */
+function kindOf(shape: number): 0 | 1 | 2 | 3 {
+  if (shape === 0.5) return 0;
+  if (shape === 1) return 1;
+  return shape > 1 ? 2 : 3;
 }
 
 function relativeScales(scales: Float64Array): Float64Array | null {

@@ -4,6 +4,7 @@ import { PURPOSE, streamOf, type RandomStream } from '../numerics/random';
 import { fillExponentials, fillHalfNormals } from '../numerics/ziggurat';
 import { InputError } from '../study/input-error';
 import { planColumn, Workspace, type ColumnPlan } from './column-plan';
+import { QuickColumns } from './quick-columns';
 
 /** Replicas of a block. A column's stream of random numbers begins anew with every block: part of the bundle's contract. */
 export const BLOCK = 32;
@@ -21,6 +22,8 @@ export interface SamplerParameters {
 export interface EnsemblePlan {
   outcomes: number;
   columns: ColumnPlan[];
+  /** `null` where the system grants no memory for it: the columns are then drawn here. */
+  quick: QuickColumns | null;
 }
 
 /**
@@ -33,6 +36,7 @@ export function planEnsemble({ columns, outcomes, shape, scale }: SamplerParamet
     all.subarray(column * outcomes, (column + 1) * outcomes);
   return {
     outcomes,
+    quick: QuickColumns.over(outcomes, BLOCK),
     columns: Array.from({ length: columns }, (_, column) => {
       const shapes = row(shape, column);
       if (shapes.every((a) => a === 0)) throw withoutPosterior(column);
@@ -71,6 +75,10 @@ export function drawBlock(
     const columnPlan = plan.columns[column]!;
     const stream = streamOf(seed, PURPOSE.ensemble, column, block);
     const at = (column - first) * plan.outcomes;
+    if (plan.quick && !columnPlan.inLogs) {
+      plan.quick.draw(columnPlan, stream.state, replicas, out, at, stride);
+      continue;
+    }
     for (let replica = 0; replica < replicas; replica++) drawColumn(columnPlan, stream, out, at + replica * stride);
   }
 }

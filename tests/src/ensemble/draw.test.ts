@@ -1,6 +1,6 @@
 import { createHash } from 'node:crypto';
 import fc from 'fast-check';
-import { describe, expect, it } from 'vitest';
+import { describe, expect, it, vi } from 'vitest';
 import { ANCHOR_SCALE, ANCHOR_SHAPE, EQUAL_SCALES } from '../../../src/ensemble/column-plan';
 import { BLOCK, drawBlock, planEnsemble, type SamplerParameters } from '../../../src/ensemble/draw';
 import { InputError } from '../../../src/study/input-error';
@@ -54,6 +54,30 @@ const column = fc
   .filter((cells) => cells.some(([a]) => a > 0));
 
 describe('A block of replicas', () => {
+  it('is the same to the bit where the system grants no memory for WebAssembly, for any shapes and scales', () => {
+    fc.assert(
+      fc.property(fc.array(column, { minLength: 1, maxLength: 3 }), fc.boolean(), (columns, weighted) => {
+        const outcomes = Math.max(...columns.map((cells) => cells.length));
+        const cells = columns.flatMap((each) => Array.from({ length: outcomes }, (_, k) => each[k] ?? [0, 1]));
+        const parameters: SamplerParameters = {
+          columns: columns.length,
+          outcomes,
+          shape: Float64Array.from(cells, ([a]) => a!),
+          scale: weighted ? Float64Array.from(cells, ([, s]) => s!) : null,
+        };
+        const quick = draw(parameters, 3);
+        const refused = vi.spyOn(WebAssembly, 'Memory').mockImplementation(function () {
+          throw new RangeError('WebAssembly.Memory(): could not allocate memory');
+        });
+        const plain = draw(parameters, 3);
+        expect(refused).toHaveBeenCalledOnce();
+        refused.mockRestore();
+        expect(plain).toEqual(quick);
+      }),
+      { numRuns: 300, seed: 12 },
+    );
+  });
+
   it('has columns that add up to 1 within 1e-12, no share below 0, and 0 where the shape is 0, for any shapes and scales', () => {
     fc.assert(
       fc.property(column, fc.boolean(), (cells, weighted) => {
