@@ -1,12 +1,9 @@
 import { tmpdir } from 'node:os';
-import type { DuckDBConnection, DuckDBDataChunk, DuckDBResult, DuckDBValue } from '@duckdb/node-api';
+import type { DuckDBConnection, DuckDBDataChunk, DuckDBValue } from '@duckdb/node-api';
 import { Cancelled, InputError } from '../study/input-error';
 
 /** Threads of one reading: DuckDB decodes beside the thread that takes the values, and files are split over workers. */
 const THREADS = '1';
-/** Rows of a full chunk (DuckDB's vector size). The ending row comes in a chunk of its own; were it ever not so, the count
- * of rows would be wrong and the reading refused. */
-const FULL_CHUNK = 2048;
 /** What DuckDB may hold, a few row groups: its own limit would be a share of the whole machine. */
 const MEMORY = '400MB';
 
@@ -30,12 +27,6 @@ export interface Query {
   columns: number;
   from: number;
   to: number;
-}
-
-/** A chunk of a result, of which only the first `rows` rows are rows of the file. */
-export interface Rows {
-  chunk: DuckDBDataChunk;
-  rows: number;
 }
 
 /**
@@ -97,30 +88,26 @@ export class OneFile {
   /**
    * Rows `[from, to)` of the file, in order: `expressions` over its columns `c0`, `c1`, ..., in chunks. The last of the
    * `columns` columns is the row number, counted from 0: DuckDB passes over row groups outside the range. The
-   * stream of a DuckDB result ends quietly where the reading fails (see `UNION ALL` below): a stream that does not end
-   * with the row that stands only there throws `InputError` with DuckDB's message.
+   * stream of a DuckDB result ends quietly where the reading fails: one that ends before all rows have come throws
+   * `InputError` with DuckDB's message.
    */
-  async *rows(query: Query, signal?: AbortSignal): AsyncGenerator<Rows> {
+  async *rows(query: Query, signal?: AbortSignal): AsyncGenerator<DuckDBDataChunk> {
     const interrupt = (): void => this.connection.interrupt();
     signal?.addEventListener('abort', interrupt);
+    const wanted = query.to - query.from;
     let passed = 0;
     try {
-      const result = await this.start(query);
-      const last = query.expressions.length;
+      const result = await this.connection.stream(this.select(query), this.bound(query));
       // The next chunk is asked for before this one is worked on: DuckDB decodes meanwhile.
-      for (let next = result.fetchChunk(); ;) {
+      let next = result.fetchChunk();
+      while (passed < wanted) {
         const chunk = await next;
         if (signal?.aborted) throw new Cancelled();
-        if (chunk === null || chunk.rowCount === 0) break;
-        // A full chunk is never the one with the ending row: to look into each of them would cost a third of the reading.
-        const ends = chunk.rowCount < FULL_CHUNK && chunk.getColumnVector(last).getItem(chunk.rowCount - 1) === 1;
-        if (!ends) next = result.fetchChunk();
-        const rows = chunk.rowCount - (ends ? 1 : 0);
-        passed += rows;
-        yield { chunk, rows };
-        if (ends) return;
+        if (chunk === null || chunk.rowCount === 0) throw await this.reasonOf(query, passed);
+        passed += chunk.rowCount;
+        if (passed < wanted) next = result.fetchChunk();
+        yield chunk;
       }
-      throw await this.reasonOf(query, passed);
     } catch (cause) {
       if (signal?.aborted) throw new Cancelled();
       throw cause instanceof InputError || cause instanceof Cancelled ? cause : this.fault(passed, cause);
@@ -129,12 +116,10 @@ export class OneFile {
     }
   }
 
-  private start(query: Query): Promise<DuckDBResult> {
-    const { expressions } = query;
-    const ending = expressions.map(() => 'NULL').join(', ');
-    const sql = `SELECT ${[...expressions, '0::TINYINT'].join(', ')} FROM ${this.from(query)}
-      UNION ALL SELECT ${ending === '' ? '' : `${ending}, `}1::TINYINT`;
-    return this.connection.stream(sql, this.bound(query));
+  private select(query: Query): string {
+    // Where no column serves the rows are counted all the same.
+    const expressions = query.expressions.length > 0 ? query.expressions.join(', ') : '0';
+    return `SELECT ${expressions} FROM ${this.from(query)}`;
   }
 
   private from({ columns }: Query): string {
@@ -148,14 +133,16 @@ export class OneFile {
 
   /** Why a stream broke off: the same values asked for once more as an aggregate, which does tell. */
   private async reasonOf(query: Query, passed: number): Promise<InputError> {
-    const counts = query.expressions.map((expression) => `count(${expression})`);
+    // Of hashes, for which every value must be decoded: a count may come from the footer.
+    const hashes = query.expressions.map((expression) => `bit_xor(hash(${expression}))`);
     try {
-      const sql = `SELECT ${[...counts, 'count(*)'].join(', ')} FROM ${this.from(query)}`;
+      const sql = `SELECT ${[...hashes, 'count(*)'].join(', ')} FROM ${this.from(query)}`;
       await this.connection.run(sql, this.bound(query));
     } catch (cause) {
       return this.fault(passed, cause);
     }
-    return this.fault(passed, new Error('the reading broke off'));
+    const what = `${passed} rows where its footer tells ${query.to - query.from}`;
+    return new InputError(this.name, what, 'copy or make the file again');
   }
 
   private fault(passed: number, cause: unknown): InputError {

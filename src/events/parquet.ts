@@ -1,6 +1,5 @@
 import { closeSync } from 'node:fs';
 import type { DuckDBDataChunk } from '@duckdb/node-api';
-import { InputError } from '../study/input-error';
 import type { Batch, Need, Reader, Unit } from './batch';
 import { openFile, sizeOf } from './byte-source';
 import { OneFile } from './duckdb';
@@ -73,7 +72,7 @@ async function* readUnit(unit: Unit, needs: readonly Need[], signal?: AbortSigna
   const asked = needs.map((need, i) => ask(need, types[i], `c${positions[i]}`, name));
   const file = await OneFile.open(path, name, TABLE);
   try {
-    yield* batchesOf(unit, needs, to - from, stretches(file, asked, columns, { from, to }, name, signal), signal);
+    yield* batchesOf(unit, needs, to - from, stretches(file, asked, columns, { from, to }, signal), signal);
   } finally {
     file.close();
   }
@@ -84,17 +83,12 @@ async function* stretches(
   asked: Asked[],
   columns: number,
   { from, to }: { from: number; to: number },
-  name: string,
   signal?: AbortSignal,
 ): AsyncGenerator<Stretch> {
   const expressions = asked.flatMap(({ numbers, text }) => [numbers, text].filter((each) => each !== null));
-  let passed = 0;
-  for await (const { chunk, rows: count } of file.rows({ expressions, columns, from, to }, signal)) {
-    passed += count;
-    yield { slabs: slabsOf(chunk, asked), rows: count };
+  for await (const chunk of file.rows({ expressions, columns, from, to }, signal)) {
+    yield { slabs: slabsOf(chunk, asked), rows: chunk.rowCount };
   }
-  if (passed === to - from) return;
-  throw new InputError(name, `${passed} rows where its footer tells ${to - from}`, 'copy or make the file again');
 }
 
 function slabsOf(chunk: DuckDBDataChunk, asked: readonly Asked[]): Slab[] {
