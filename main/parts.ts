@@ -7,7 +7,7 @@ import { readNpy } from '../src/handover/npy';
 import { InputError } from '../src/study/input-error';
 import { parseJson } from '../src/study/study';
 import type { PlainCellSums } from '../src/tally/cell-sums';
-import { findDuplicates, IdentitySpill, sortRecords, spilledBuckets } from '../src/tally/identities';
+import { findDuplicates, IdentitySpill, sortedRecords, spilledBuckets } from '../src/tally/identities';
 import { planIdentity, planOfText, planText, type TallyPlan } from '../src/tally/plan';
 import type { Tally } from '../src/tally/tally';
 import { TallySums, type PlainTallySums } from '../src/tally/tally-sums';
@@ -115,15 +115,7 @@ function writeValues(folder: FolderInTheMaking, name: string, values: Float64Arr
 
 function writeIdentities(folder: FolderInTheMaking, buckets: Iterable<Uint32Array>): void {
   folder.stream(IDENTITIES, (put) => {
-    for (const records of buckets) {
-      const sorted = new Uint32Array(records.length);
-      const order = sortRecords(
-        records,
-        new Uint32Array(records.length / 4).map((_, i) => i),
-      );
-      order.forEach((i, at) => sorted.set(records.subarray(i * 4, i * 4 + 4), at * 4));
-      put(new Uint8Array(sorted.buffer));
-    }
+    for (const records of buckets) put(new Uint8Array(sortedRecords(records).buffer));
   });
 }
 

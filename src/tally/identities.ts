@@ -94,33 +94,27 @@ export function findDuplicates(
   const found: Duplicates = { identities: 0, rows: 0, examples: [] };
   let first: { unit: number; place: number; places: string[] }[] = [];
   for (const records of buckets) {
-    for (const group of repeatedGroups(records)) {
+    const repeated = sortedRecords(repeatedRecords(records));
+    let from = 0;
+    while (from < repeated.length) {
+      const places: string[] = [];
+      let to = from;
+      for (; sameKey(repeated, from, to); to += WORDS) {
+        if (places.length < MOST_PLACES) places.push(locate(repeated[to + 2]!, repeated[to + 3]!));
+      }
       found.identities++;
-      found.rows += group.length - 1;
-      const at = group[0]! * WORDS;
-      const places = group.slice(0, MOST_PLACES).map((i) => locate(records[i * WORDS + 2]!, records[i * WORDS + 3]!));
-      first.push({ unit: records[at + 2]!, place: records[at + 3]!, places });
+      found.rows += (to - from) / WORDS - 1;
+      first.push({ unit: repeated[from + 2]!, place: repeated[from + 3]!, places });
       first = first.sort((a, b) => a.unit - b.unit || a.place - b.place).slice(0, MOST_EXAMPLES);
+      from = to;
     }
   }
   found.examples = first.map(({ places }) => places);
   return found;
 }
 
-/** Groups of records with the same key, in the order of their places; single ones left out. */
-function repeatedGroups(records: Uint32Array): number[][] {
-  const repeated = sortRecords(records, markRepeated(records));
-  const groups: number[][] = [];
-  for (const i of repeated) {
-    const last = groups.at(-1);
-    if (last && sameKey(records, last[0]!, i)) last.push(i);
-    else groups.push([i]);
-  }
-  return groups;
-}
-
-/** Indices of records whose key stands more than once, by a hash table with open addressing. */
-function markRepeated(records: Uint32Array): Uint32Array {
+/** The records whose key stands more than once, found by a hash table with open addressing. */
+function repeatedRecords(records: Uint32Array): Uint32Array {
   const count = records.length / WORDS;
   let size = 1024;
   while (size < count * 2) size *= 2;
@@ -128,9 +122,10 @@ function markRepeated(records: Uint32Array): Uint32Array {
   const repeated = new Uint8Array(count);
   let marked = 0;
   for (let i = 0; i < count; i++) {
+    const at = i * WORDS;
     // Keys are hashes or mixed integers already; the multiplier only spreads the low word over the table.
-    let slot = (Math.imul(records[i * WORDS]!, 0x9e3779b1) ^ records[i * WORDS + 1]!) & (size - 1);
-    while (table[slot]! >= 0 && !sameKey(records, table[slot]!, i)) slot = (slot + 1) & (size - 1);
+    let slot = (Math.imul(records[at]!, 0x9e3779b1) ^ records[at + 1]!) & (size - 1);
+    while (table[slot]! >= 0 && !sameKey(records, table[slot]! * WORDS, at)) slot = (slot + 1) & (size - 1);
     const known = table[slot]!;
     if (known < 0) {
       table[slot] = i;
@@ -139,23 +134,45 @@ function markRepeated(records: Uint32Array): Uint32Array {
     marked += 2 - repeated[known]!;
     repeated[known] = repeated[i] = 1;
   }
-  const indices = new Uint32Array(marked);
-  let at = 0;
-  for (let i = 0; i < count; i++) if (repeated[i] === 1) indices[at++] = i;
-  return indices;
+  const found = new Uint32Array(marked * WORDS);
+  let to = 0;
+  for (let i = 0; i < count; i++) {
+    if (repeated[i] === 0) continue;
+    for (let word = 0; word < WORDS; word++) found[to++] = records[i * WORDS + word]!;
+  }
+  return found;
 }
 
+/** Whether the records at two places of `records` have the same key; no key stands beyond its end. */
 function sameKey(records: Uint32Array, a: number, b: number): boolean {
-  return records[a * WORDS] === records[b * WORDS] && records[a * WORDS + 1] === records[b * WORDS + 1];
+  return records[a] === records[b] && records[a + 1] === records[b + 1];
 }
 
-/** Record indices sorted by key, then unit, then place. */
-export function sortRecords(records: Uint32Array, indices: Uint32Array): Uint32Array {
-  return indices.sort((a, b) => {
-    for (let word = 0; word < WORDS; word++) {
-      const difference = records[a * WORDS + word]! - records[b * WORDS + word]!;
-      if (difference !== 0) return difference;
+/** Records sorted by key, then unit, then place: byte by byte from the last (LSD radix sort, Knuth, vol. 3, 5.2.5). */
+export function sortedRecords(records: Uint32Array): Uint32Array {
+  let [from, to] = [records.slice(), new Uint32Array(records.length)];
+  for (let word = WORDS - 1; word >= 0; word--) {
+    for (let shift = 0; shift < 32; shift += 8) {
+      if (sortByByte(from, to, word, shift)) [from, to] = [to, from];
     }
-    return 0;
-  });
+  }
+  return from;
+}
+
+/** Sorts by one byte of the records, equal ones left in their order; false, with nothing written, where all are equal. */
+function sortByByte(from: Uint32Array, to: Uint32Array, word: number, shift: number): boolean {
+  const starts = new Uint32Array(257);
+  for (let at = word; at < from.length; at += WORDS) starts[((from[at]! >>> shift) & 255) + 1]! += WORDS;
+  if (starts.includes(from.length)) return false;
+  for (let byte = 0; byte < 256; byte++) starts[byte + 1]! += starts[byte]!;
+  for (let at = 0; at < from.length; at += WORDS) {
+    const byte = (from[at + word]! >>> shift) & 255;
+    const into = starts[byte]!;
+    starts[byte] = into + WORDS;
+    to[into] = from[at]!;
+    to[into + 1] = from[at + 1]!;
+    to[into + 2] = from[at + 2]!;
+    to[into + 3] = from[at + 3]!;
+  }
+  return true;
 }

@@ -1,8 +1,9 @@
+import fc from 'fast-check';
 import { mkdtempSync, rmSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterEach, beforeEach, describe, expect, it } from 'vitest';
-import { findDuplicates, IdentitySpill, spilledBuckets } from '../../../src/tally/identities';
+import { findDuplicates, IdentitySpill, sortedRecords, spilledBuckets } from '../../../src/tally/identities';
 
 let folder: string;
 beforeEach(() => void (folder = mkdtempSync(join(tmpdir(), 'identities-'))));
@@ -52,5 +53,21 @@ describe('duplicate identities', () => {
   it('are found when a buffer had to be written out in between', () => {
     const records = Array.from({ length: 10_000 }, (_, i) => [i % 9999, 1, 0, i] as [number, number, number, number]);
     expect(duplicatesOf(records, 2)).toEqual({ identities: 1, rows: 1, examples: [['0:0', '0:9999']] });
+  });
+});
+
+describe('records of identities', () => {
+  it('are sorted by key, then unit, then place, as numbers without sign', () => {
+    const word = fc.oneof(fc.constantFrom(0, 1, 255, 256, 0x7fffffff, 0x80000000, 0xffffffff), fc.nat(3), fc.nat());
+    fc.assert(
+      fc.property(fc.array(fc.tuple(word, word, word, word), { maxLength: 60 }), (records) => {
+        const expected = [...records].sort((a, b) => {
+          const differing = a.findIndex((each, i) => each !== b[i]);
+          return differing < 0 ? 0 : a[differing]! - b[differing]!;
+        });
+        expect([...sortedRecords(Uint32Array.from(records.flat()))]).toEqual(expected.flat());
+      }),
+      { numRuns: 500, seed: 5 },
+    );
   });
 });
