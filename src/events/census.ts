@@ -39,6 +39,11 @@ export class Census {
     else this.addNumeric(value);
   }
 
+  /** Whether only numbers matter: it may be a column of numbers, and its labels are too many to be told. */
+  get countsNumbers(): boolean {
+    return this.mayBeNumber && this.labels === null;
+  }
+
   /** Counts a value of JSON. */
   addJson(value: unknown): void {
     const number = jsonNumber(value);

@@ -13,6 +13,12 @@ export const LEFTOVER = 4;
 const STRETCH = 8192;
 /** Room in a stretch for each field more: lines of ordinary numbers fit whole, however many columns there are. */
 const STRETCH_A_FIELD = 32;
+/**
+ * Where the quick way gets fewer lines than this, it costs more than it saves: the next ones are not tried, twice as many each
+ * time.
+ */
+const FEW = 16;
+const LONGEST_PAUSE = 255;
 /** Bytes that may be read before and behind the lines. */
 const MARGIN = 64;
 const PAGE = 65_536;
@@ -37,12 +43,19 @@ const spares: WebAssembly.Memory[] = [];
 export class QuickLines {
   /** Where the lines must stand. */
   readonly room: Buffer;
-  /** Where the numbers of each field of kind `NUMBER` are put, one a row; empty for the other fields. */
+  /** The kind of each field. One that is not `SKIPPED` may become another that is not. */
+  readonly kinds: Uint8Array;
+  /** Where the numbers of each field are put, one a row; empty for fields that are skipped. */
   readonly numbers: Float64Array[];
   /** Where each line began in `room`; one a row. */
   readonly begins: Int32Array;
   /** The fields left to the caller, `LEFTOVER` entries each, in the order of the lines. */
   readonly leftovers: Int32Array;
+  /** Rows after the last call of `parse`, those before it included; and its leftovers. */
+  rows = 0;
+  left = 0;
+  private pause = 0;
+  private untried = 0;
   private readonly memory: WebAssembly.Memory;
   private readonly exports: Exports;
 
@@ -76,7 +89,7 @@ export class QuickLines {
     const stopsAt = place(4 * (stretch + 1));
     const beginsAt = place(4 * capacity);
     const leftoversAt = place(4 * LEFTOVER * needed * capacity);
-    const targets = Array.from(kinds, (kind) => (kind === NUMBER ? place(8 * capacity) : 0));
+    const targets = Array.from(kinds, (kind) => (kind === SKIPPED ? 0 : place(8 * capacity)));
 
     this.memory = memoryOf(bytes);
     const { buffer } = this.memory;
@@ -84,7 +97,8 @@ export class QuickLines {
     this.numbers = targets.map((at) => new Float64Array(buffer, at, at === 0 ? 0 : capacity));
     this.begins = new Int32Array(buffer, beginsAt, capacity);
     this.leftovers = new Int32Array(buffer, leftoversAt, LEFTOVER * needed * capacity);
-    new Uint8Array(buffer, kindsAt, kinds.length).set(kinds);
+    this.kinds = new Uint8Array(buffer, kindsAt, kinds.length);
+    this.kinds.set(kinds);
     new Uint32Array(buffer, targetsAt, kinds.length).set(targets);
     new Float64Array(buffer, powersAt, POWERS).set(Array.from({ length: POWERS }, (_, k) => Number(`1e${k}`)));
     module ??= new WebAssembly.Module(Buffer.from(code, 'base64'));
@@ -107,20 +121,21 @@ export class QuickLines {
 
   /**
    * Parses whole lines of `room[from, to)` into rows from `row` on while there is room and nothing about them is unusual;
-   * the begin of the first line not parsed.
+   * the begin of the first line not parsed, which is for the careful way.
    */
   parse(from: number, to: number, row: number): number {
-    return this.exports.parse(from, to, row);
-  }
-
-  /** Rows after the last call of `parse`, those before it included. */
-  get rows(): number {
-    return this.exports.rows.value as number;
-  }
-
-  /** Leftovers of the last call of `parse`. */
-  get left(): number {
-    return this.exports.left.value as number;
+    this.rows = row;
+    this.left = 0;
+    if (this.untried > 0) {
+      this.untried--;
+      return from;
+    }
+    const line = this.exports.parse(from, to, row);
+    this.rows = this.exports.rows.value as number;
+    this.left = this.exports.left.value as number;
+    this.pause = line < to && this.rows - row < FEW ? Math.min(2 * this.pause + 1, LONGEST_PAUSE) : 0;
+    this.untried = this.pause;
+    return line;
   }
 
   /** Gives the memory back: nothing of it may be used after this. */

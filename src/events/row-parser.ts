@@ -22,10 +22,6 @@ export interface Layout {
 const LINE_FEED = 10;
 const RETURN = 13;
 
-/** Where the quick way gets fewer lines than this, it costs more than it saves: the next ones go the careful way. */
-const FEW = 16;
-const LONGEST_PAUSE = 255;
-
 /**
  * Turns lines of a delimited table into rows of a batch. Two ways through a line: the quick one gives up at anything
  * unusual; the careful one then reads that line again, and alone decides what is rejected and why.
@@ -43,9 +39,6 @@ export class RowParser implements LineParser {
   private readonly asText: Uint8Array;
   /** `null` where the system grants no memory for it: then every line goes the careful way. */
   private readonly quick: QuickLines | null;
-  /** Lines that go the careful way after the quick one got nowhere, and those of them that are still to come. */
-  private pause = 0;
-  private unquick = 0;
 
   /** The first `linesToSkip` lines are passed over. */
   constructor(
@@ -88,7 +81,7 @@ export class RowParser implements LineParser {
         line = bytes.indexOf(LINE_FEED, line) + 1;
         continue;
       }
-      if (this.quick && this.unquick-- <= 0) line = this.quickly(this.quick, bytes, line, to);
+      if (this.quick) line = this.quickly(this.quick, bytes, line, to);
       if (line < to && !this.builder.full) line = this.carefully(bytes, line);
     }
     return line;
@@ -105,8 +98,6 @@ export class RowParser implements LineParser {
       line = quick.begins[bad];
     }
     this.fillLeftTexts(quick, bytes, rows);
-    this.pause = rows - builder.rows < FEW ? Math.min(2 * this.pause + 1, LONGEST_PAUSE) : 0;
-    this.unquick = this.pause;
     while (builder.rows < rows) builder.places[builder.rows++] = ++this.place;
     return line;
   }

@@ -1,22 +1,26 @@
 import fc from 'fast-check';
 import { afterEach, describe, expect, test, vi } from 'vitest';
+import type { Reader } from '../../../src/events/batch';
 import { csv } from '../../../src/events/csv';
 import { fileOf, needsOf, readAll, type Gathered } from './gather';
 
 const bits = (values: number[]): BigUint64Array => new BigUint64Array(Float64Array.from(values).buffer);
 
-/** Reads a table by a reader whose system grants no WebAssembly memory: every line goes the careful way. */
-async function carefully(text: string, columns: string[]): Promise<Gathered> {
+/** What `work` gives with the reader of a system that grants no WebAssembly memory: every line goes the careful way. */
+async function refused<T>(work: (reader: Reader) => Promise<T>): Promise<T> {
   vi.resetModules();
   const denied = vi.spyOn(WebAssembly, 'Memory').mockImplementation(function () {
     throw new RangeError('WebAssembly.Memory(): could not allocate memory');
   });
   const { csv: fresh } = await import('../../../src/events/csv');
-  const all = await readAll(fresh, fileOf(text), needsOf(...columns));
+  const result = await work(fresh);
   expect(denied).toHaveBeenCalled();
   denied.mockRestore();
-  return all;
+  return result;
 }
+
+const carefully = (text: string, columns: string[]): Promise<Gathered> =>
+  refused((reader) => readAll(reader, fileOf(text), needsOf(...columns)));
 
 afterEach(() => vi.restoreAllMocks());
 
@@ -121,6 +125,20 @@ describe('the quick way through a table gives what the careful way gives', () =>
         expect(await readAll(csv, fileOf(text), needsOf('t'))).toEqual(await carefully(text, ['t']));
       }),
       { numRuns: 150, seed: 12 },
+    );
+  });
+
+  test('to whoever inspects it: the same facts of every column', async () => {
+    const large = (text: string): string =>
+      `${text}\n${Array.from({ length: 1500 }, (_, i) => `${i / 3},${i % 5},a`).join('\n')}\n`;
+    await fc.assert(
+      fc.asyncProperty(table, table, async (before, after) => {
+        const path = fileOf(large(before) + after.slice(after.indexOf('\n') + 1));
+        const facts = await csv.inspect!(path);
+        expect(facts).toEqual(await refused((reader) => reader.inspect!(path)));
+        expect(facts.rows).toBeGreaterThanOrEqual(1500);
+      }),
+      { numRuns: 60, seed: 14 },
     );
   });
 
