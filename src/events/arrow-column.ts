@@ -32,6 +32,19 @@ export function slabOf(arrow: Arrow, vector: Vector, as: Need['as']): Slab {
   return { numbers: Float64Array.from({ length: vector.length }, (_, row) => numberAt(vector, row)), text: null };
 }
 
+/** Whether every buffer of a column holds as much as its rows need: a damaged one may hold less, and nothing else tells. */
+export function isWhole(arrow: Arrow, vector: Vector): boolean {
+  return vector.data.every((data) => {
+    const { length, type, values, valueOffsets, nullBitmap, nullCount, stride } = data as Data;
+    const { DataType: is } = arrow;
+    if (nullCount > 0 && !is.isNull(type) && nullBitmap.length * 8 < length) return false;
+    if (is.isDictionary(type) && !isWhole(arrow, data.dictionary as Vector)) return false;
+    if (is.isNull(type) || length === 0) return true;
+    if (valueOffsets) return valueOffsets.length > length && Number(valueOffsets[length]) <= values.length;
+    return is.isBool(type) ? values.length * 8 >= length : values.length >= length * stride;
+  });
+}
+
 function numberAt(vector: Vector, row: number): number {
   const value = vector.get(row) as number | bigint | boolean | null;
   return value === null ? NaN : Number(value);

@@ -1,10 +1,11 @@
 import { open } from 'node:fs/promises';
 import type { DataType, Field, RecordBatch, RecordBatchReader, Schema } from 'apache-arrow';
 import { InputError } from '../study/input-error';
-import { slabOf, kindOf } from './arrow-column';
-import { damaged, isArrowFile, LARGEST_BODY, messagesOf, type ArrowMessage } from './arrow-messages';
+import { isWhole, kindOf, slabOf } from './arrow-column';
+import { damaged, isArrowFile, LARGEST_BODY, messagesOf } from './arrow-messages';
 import type { Batch, Need, Reader, Unit } from './batch';
 import { firstBytes, PlainBytes, sizeOf } from './byte-source';
+import { unlz4 } from './lz4';
 import { positionsOf } from './positions';
 import { batchesOf, type Stretch } from './slab-batches';
 import { unzstd } from './zstd';
@@ -20,8 +21,8 @@ interface Detail {
 }
 
 /**
- * Arrow IPC: file, stream, and Feather version 2, which is such a file. Buffers may be compressed by zstd; LZ4 is refused,
- * because no kept library decodes it rightly.
+ * Arrow IPC: file, stream, and Feather version 2, which is such a file. Buffers may be compressed by zstd or
+ * LZ4.
  */
 export const arrow: Reader = {
   format: 'arrow',
@@ -62,8 +63,12 @@ async function* stretches(
   let passed = 0;
   for await (const batch of recordBatches(library, path, name)) {
     passed += batch.numRows;
+    const columns = needs.map((_, i) => batch.getChildAt(positions[i])!);
+    if (!columns.every((column) => isWhole(library, column))) {
+      throw damaged(name, unit.end, `a buffer is too short behind row ${passed - batch.numRows}`);
+    }
     yield {
-      slabs: needs.map(({ as }, i) => slabOf(library, batch.getChildAt(positions[i])!, as)),
+      slabs: needs.map(({ as }, i) => slabOf(library, columns[i], as)),
       rows: batch.numRows,
     };
   }
@@ -73,6 +78,7 @@ async function* stretches(
 
 async function* recordBatches(library: Arrow, path: string, name: string): AsyncGenerator<RecordBatch> {
   const { CompressionType, compressionRegistry } = library;
+  compressionRegistry.set(CompressionType.LZ4_FRAME, { decode: (bytes) => unlz4(bytes, name, LARGEST_BODY) });
   compressionRegistry.set(CompressionType.ZSTD, { decode: (bytes) => unzstd(bytes, name, LARGEST_BODY) });
   const opened = await openReader(library, path, name);
   try {
@@ -133,7 +139,6 @@ function countRows(library: Arrow, path: string, name: string): number {
   refuseFeather1(path, name);
   let rows = 0;
   for (const { message } of messagesOf(library, path, name)) {
-    refuseLz4(library, message, name);
     if (message.isRecordBatch()) rows += message.header().length;
   }
   return rows;
@@ -141,13 +146,7 @@ function countRows(library: Arrow, path: string, name: string): number {
 
 function refuseFeather1(path: string, name: string): void {
   if (Buffer.from(firstBytes(path, name, FEATHER_1.length)).toString('latin1') !== FEATHER_1) return;
-  throw new InputError(name, 'Feather of version 1', 'write it as version 2, with zstd or uncompressed');
-}
-
-function refuseLz4(library: Arrow, message: ArrowMessage['message'], name: string): void {
-  const batch = message.isDictionaryBatch() ? message.header().data : message.isRecordBatch() ? message.header() : null;
-  if (batch?.compression?.type !== library.CompressionType.LZ4_FRAME) return;
-  throw new InputError(name, 'its buffers are compressed by LZ4', 'write it with zstd or uncompressed');
+  throw new InputError(name, 'Feather of version 1', 'write it as version 2');
 }
 
 function checkType(library: Arrow, { column, as }: Need, type: DataType, name: string): void {

@@ -1,6 +1,6 @@
 """Makes the event files of this folder, which the readers of src/events are tested against.
 
-Made on Debian 12 with python3 3.11, numpy 1.24.2, h5py 3.7.0 and zstd 1.5.4:  python3 make.py
+Made on Debian 12 with python3 3.11, numpy 1.24.2, h5py 3.7.0, zstd 1.5.4 and lz4 1.9.4:  python3 make.py
 Text files hold the table of row i: t = i % 50 + 0.25, r = i * 7 % 101. Binary files say what they hold below.
 """
 
@@ -30,6 +30,23 @@ def make_zstd():
     (HERE / "unchecked.csv.zst").write_bytes(zstd(text, "-3", "--no-check"))
     (HERE / "frames.csv.zst").write_bytes(skippable + zstd(text[:middle]) + zstd("") + zstd(text[middle:], "-1"))
     (HERE / "tiny.csv.zst").write_bytes(zstd("t,r\n1,2\n"))
+
+
+def lz4(text, *options):
+    return subprocess.run(["lz4", "-q", "-c", *options], input=text.encode(), capture_output=True, check=True).stdout
+
+
+def make_lz4():
+    """Frames of the same table: blocks that stand alone and such that refer back, of 64 KiB and 4 MiB, checked and not."""
+    text = table(40_000)
+    middle = len(text) // 2 + 3
+    skippable = bytes([0x5F, 0x2A, 0x4D, 0x18, 5, 0, 0, 0]) + b"notes"
+    (HERE / "checked.lz4").write_bytes(lz4(text, "-9", "-BX", "-B4"))
+    (HERE / "linked.lz4").write_bytes(lz4(text, "-1", "-BD", "-B4"))
+    (HERE / "unchecked.lz4").write_bytes(lz4(text, "--no-frame-crc", "-B7"))
+    (HERE / "frames.lz4").write_bytes(skippable + lz4(text[:middle]) + lz4("") + lz4(text[middle:], "-12", "-BD"))
+    # Digits as random as they come are stored as they are.
+    (HERE / "stored.lz4").write_bytes(lz4(np.random.default_rng(1).bytes(70_000).decode("latin1"), "-1", "-B4"))
 
 
 ROWS = 1000
@@ -108,4 +125,5 @@ def make_numpy():
 os.chdir(HERE)
 make_numpy()
 make_zstd()
+make_lz4()
 make_hdf5()

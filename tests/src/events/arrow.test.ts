@@ -28,6 +28,7 @@ import { arrow } from '../../../src/events/arrow';
 import { readerFor } from '../../../src/events/formats';
 import { inspectFile } from '../../../src/events/inspect';
 import { fileOf, needsOf, readAll, refusal } from './gather';
+import { made } from './reference-rows';
 
 /** Both forms of the format, in batches of 7 rows. */
 function written(table: Table, options = {}): { file: Uint8Array; stream: Uint8Array } {
@@ -157,16 +158,42 @@ describe('compressed Arrow data', () => {
     expect(await refusal(readAll(arrow, fileOf(bad), needsOf('x')))).toMatch(/^InputError: events: damaged/);
   });
 
-  test('are refused clearly where LZ4 compressed them', async () => {
-    const magic = Buffer.from([0x04, 0x22, 0x4d, 0x18, 0x40]);
-    compressionRegistry.set(CompressionType.LZ4_FRAME, {
-      encode: (data) => Buffer.concat([magic, Buffer.alloc(3), data]),
-    });
-    const numbers = tableFromArrays({ x: Float64Array.from({ length: 400 }, (_, i) => i / 3) });
-    const writer = RecordBatchStreamWriter.writeAll(numbers, { compressionType: CompressionType.LZ4_FRAME } as never);
-    expect(await refusal(readAll(arrow, fileOf(writer.toUint8Array(true)), needsOf('x')))).toBe(
-      'InputError: events: its buffers are compressed by LZ4: write it with zstd or uncompressed',
+  test('are read where LZ4 compressed them, as in Feather files by default, and stop at damage', async () => {
+    const path = made('lz4.feather');
+    const { rows, rejects } = await readAll(arrow, path, needsOf('e_tag', 'quality', 'run:text'));
+    expect(rejects).toEqual([]);
+    expect(rows).toEqual(Array.from({ length: 20_000 }, (_, i) => [i + 1, i / 4, i % 3, `run ${i % 7}`]));
+    const bad = readFileSync(path);
+    const frame = bad.indexOf(Buffer.from([0x04, 0x22, 0x4d, 0x18]));
+    // The token of the first block: no literals, so that its first match has nothing to refer to.
+    bad[frame + 11] = 0;
+    expect(await refusal(readAll(arrow, fileOf(bad, '.feather'), needsOf('e_tag')))).toMatch(
+      /^InputError: events: damaged LZ4 data at byte \d+ of a buffer \(/,
     );
+  });
+
+  test('stop where a buffer holds less than its rows need, of any type', async () => {
+    const table = tableFromArrays({
+      x: Float64Array.from({ length: 400 }, (_, i) => i / 3),
+      n: Int32Array.from({ length: 400 }, (_, i) => i),
+      run: vectorFromArray(
+        Array.from({ length: 400 }, (_, i) => `run ${i}`),
+        new Utf8(),
+      ) as never,
+      flag: vectorFromArray(
+        Array.from({ length: 400 }, (_, i) => i % 3 === 0),
+        new Bool(),
+      ) as never,
+    });
+    // Every buffer is cut off before it is compressed.
+    compressionRegistry.set(CompressionType.ZSTD, { encode: (data) => rawFrame(data.subarray(0, 24)) });
+    const writer = RecordBatchStreamWriter.writeAll(table, { compressionType: CompressionType.ZSTD } as never);
+    const path = fileOf(writer.toUint8Array(true));
+    for (const column of ['x', 'n', 'run:text', 'flag']) {
+      expect(await refusal(readAll(arrow, path, needsOf(column))), column).toMatch(
+        /^InputError: events: damaged .* \(a buffer is too short behind row 0\)/,
+      );
+    }
   });
 
   test('of Feather version 1 are refused clearly', async () => {
