@@ -1,14 +1,6 @@
-import { auditOf, type Audit } from '../../src/audit/audit';
-import type { AuditInput } from '../../src/audit/audit-input';
-import { matrixSampler, type Analysis as BundleAnalysis } from '../../src/handover/analyse';
-import { referenceOf, type ReferenceSpectrum } from '../../src/audit/reference';
-import { BLOCK, drawBlock, planEnsemble, type EnsemblePlan } from '../../src/ensemble/draw';
-import { posteriorOf } from '../../src/posterior/posterior';
-import { priorOf, type PriorCounts } from '../../src/posterior/prior';
-import type { NeighbourPrior } from '../../src/posterior/neighbours';
-import { summarise, type Summary } from '../../src/posterior/summary';
+import type { Analysis as BundleAnalysis } from '../../src/handover/analyse';
 import { canonicalJson } from '../../src/study/fingerprint';
-import { resolveAxis, type Study } from '../../src/study/study';
+import type { Study } from '../../src/study/study';
 import type { Tally } from '../../src/tally/tally';
 import type {
   AuditView,
@@ -25,17 +17,20 @@ import type {
   ReplicasNeeded,
 } from '../bridge';
 import { replicasNeeded } from '../replicas-needed';
+import { analyse, audit, type Analysis, type Audited } from './analysis';
+import { Recent } from './recent';
+import type { Handled, Handlers } from './serve';
 import { auditView } from './views/audit-view';
 import { cellView } from './views/cell-view';
+import { columnMeasures, type ColumnMeasures } from './views/column-measures';
 import { columnView } from './views/column-view';
 import { comparisonView } from './views/comparison-view';
-import { columnMeasures, type ColumnMeasures } from './views/column-measures';
 import { influenceView } from './views/influence-view';
 import { planView } from './views/plan-view';
 import { posteriorView } from './views/posterior-view';
 import { rehearsalView } from './views/rehearsal-view';
+import { replicasView } from './views/replicas-view';
 import { sensitivityView } from './views/sensitivity-view';
-import type { Handled, Handlers } from './serve';
 
 /** A study and the tally that was taken under `key`. */
 export interface AtTally {
@@ -65,14 +60,6 @@ export type MatrixCalls = {
   /** Notes are `{ done, total }` blocks. */
   replicasNeeded: { argument: AtTally & { digits: number }; result: ReplicasNeeded };
 };
-
-/** A tally with its posterior under a study's prior; the summary is worked out when it is first asked for. */
-export interface Analysis extends AuditInput {
-  prior: PriorCounts & { neighbours: NeighbourPrior | null };
-  summary(): Summary;
-  /** Throws `InputError` where a column has no posterior. */
-  ensemble(): EnsemblePlan;
-}
 
 /** Tallies and posteriors kept: the present ones and those an undo goes back to. */
 const MOST_KEPT = 8;
@@ -104,7 +91,7 @@ export function matrixTask(): Handlers<MatrixCalls> {
     posterior: (at) => timed(() => posteriorView(analysed(at))),
     cell: ({ column, outcome, ...at }) => ({ result: cellView(analysed(at), column, outcome) }),
     column: ({ column, ...at }) => ({ result: columnView(analysed(at), column) }),
-    replicas: ({ indices, ...at }) => ({ result: replicasOf(analysed(at), at.study.ensemble.seed, indices) }),
+    replicas: ({ indices, ...at }) => ({ result: replicasView(analysed(at), at.study.ensemble.seed, indices) }),
     audit: (at) => timed(() => auditView(audited(at))),
     analysis(at) {
       const { analysis, reference, measures, flags, deep } = audited(at);
@@ -126,93 +113,8 @@ export function matrixTask(): Handlers<MatrixCalls> {
   };
 }
 
-function analyse(tally: Tally, study: Study): Analysis {
-  const trueAxis = resolveAxis(study.axes.true);
-  const recoAxis = resolveAxis(study.axes.reconstructed);
-  const prior = priorOf(study.prior, tally, trueAxis, recoAxis);
-  const posterior = posteriorOf(tally.cells, prior);
-  let summary: Summary | null = null;
-  let ensemble: EnsemblePlan | null = null;
-  return {
-    study,
-    trueAxis,
-    recoAxis,
-    tally,
-    prior,
-    posterior,
-    summary: () => (summary ??= summarise(posterior, tally.cells.events, study.credibility)),
-    ensemble: () => (ensemble ??= planEnsemble(posterior)),
-  };
-}
-
-/** An audit with what it rests on. */
-export interface Audited extends Audit {
-  analysis: Analysis;
-  reference: ReferenceSpectrum;
-}
-
-function audit(analysis: Analysis, referenceTable: string | null): Audited {
-  const { study, trueAxis, tally } = analysis;
-  const sources = { where: 'study', ...(referenceTable !== null && { readTable: () => referenceTable }) };
-  const reference = referenceOf(study.reference, trueAxis, tally, sources);
-  return { ...auditOf(analysis, { reference, sampler: matrixSampler }), analysis, reference };
-}
-
-/** The replicas of the given indices, the very numbers that a bundle of this study holds. */
-export function replicasOf({ posterior, ensemble }: Analysis, seed: number, indices: readonly number[]): Replicas {
-  const size = posterior.columns * posterior.outcomes;
-  const values = new Float64Array(indices.length * size);
-  const blocks = new Set(indices.map((index) => Math.floor(index / BLOCK)));
-  for (const block of blocks) {
-    const inBlock = indices.map((index) => index - block * BLOCK);
-    const drawn = drawnOf(inBlock.filter(isInBlock), ensemble(), seed, block, size);
-    inBlock.forEach((at, i) => {
-      if (isInBlock(at)) values.set(drawn.subarray(at * size, (at + 1) * size), i * size);
-    });
-  }
-  return { indices: [...indices], values };
-}
-
-function isInBlock(at: number): boolean {
-  return at >= 0 && at < BLOCK;
-}
-
-/** The replicas of a block up to the last that is wanted. */
-function drawnOf(wanted: number[], ensemble: EnsemblePlan, seed: number, block: number, size: number): Float64Array {
-  const count = Math.max(...wanted) + 1;
-  const drawn = new Float64Array(count * size);
-  drawBlock(ensemble, seed, block, count, drawn);
-  return drawn;
-}
-
 function timed<T extends { seconds: number }>(work: () => T): Handled<T> {
   const began = performance.now();
   const result = work();
   return { result: { ...result, seconds: (performance.now() - began) / 1000 } };
-}
-
-/** The last few values by their keys. */
-export class Recent<T> {
-  private readonly values = new Map<string, T>();
-  constructor(private readonly most: number) {}
-
-  /** Throws where nothing stands under `key`: a caller's fault. */
-  get(key: string): T {
-    const value = this.values.get(key);
-    if (value === undefined) throw new Error('nothing is kept under this key');
-    this.set(key, value);
-    return value;
-  }
-
-  of(key: string, make: () => T): T {
-    const value = this.values.has(key) ? this.get(key) : make();
-    this.set(key, value);
-    return value;
-  }
-
-  set(key: string, value: T): void {
-    this.values.delete(key);
-    this.values.set(key, value);
-    if (this.values.size > this.most) this.values.delete(this.values.keys().next().value!);
-  }
 }

@@ -2,7 +2,7 @@ import type { Drift } from '../../../src/audit/drift';
 import { isAbsent, type Measure } from '../../../src/audit/measure';
 import { binRange } from '../../../src/study/axis';
 import type { AuditView, BinMeasure, ColumnMeasure, DriftView, MeasureView } from '../../bridge';
-import type { Audited } from '../matrix-task';
+import type { Audited } from '../analysis';
 
 const COLUMN_MEASURES: readonly ColumnMeasure[] = [
   'effectiveEntries',

@@ -4,7 +4,7 @@ import { marginalOf, type Marginal } from '../../../src/posterior/marginal';
 import { hasNoPosterior } from '../../../src/posterior/posterior';
 import { InputError } from '../../../src/study/input-error';
 import type { CellView } from '../../bridge';
-import type { Analysis } from '../matrix-task';
+import type { Analysis } from '../analysis';
 
 /** Steps of the density's grid: a curve of that many pixels needs no more. */
 const STEPS = 300;

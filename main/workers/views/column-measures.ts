@@ -5,7 +5,7 @@ import { NO_MATCHING_BINS } from '../../../src/audit/stability';
 import { axesMatch, binRange } from '../../../src/study/axis';
 import { rowSums } from '../../../src/tally/tally';
 import type { Estimates, TallyView } from '../../bridge';
-import type { Analysis } from '../matrix-task';
+import type { Analysis } from '../analysis';
 
 /** What the axes stage shows of every column while an edge is dragged. */
 export type ColumnMeasures = Pick<

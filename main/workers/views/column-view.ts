@@ -3,7 +3,7 @@ import { simultaneousBand } from '../../../src/posterior/bands';
 import type { Posterior } from '../../../src/posterior/posterior';
 import type { ColumnView } from '../../bridge';
 import { checkPlace } from './cell-view';
-import type { Analysis } from '../matrix-task';
+import type { Analysis } from '../analysis';
 
 /** Replicas behind a band at 95 %: its half-width is then known to about 2 % (50 replicas lie beyond it). */
 const REPLICAS = 1024;

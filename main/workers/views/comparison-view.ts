@@ -6,7 +6,7 @@ import { openBundle } from '../../../src/handover/open-bundle';
 import { normalQuantile } from '../../../src/numerics/normal';
 import { binRange } from '../../../src/study/axis';
 import type { ComparisonView } from '../../bridge';
-import type { Audited } from '../matrix-task';
+import type { Audited } from '../analysis';
 
 /** The study as it stands against a bundle of the same axes. Throws `InputError` where their axes differ. */
 export function comparisonView({ analysis, reference }: Audited, folder: string): ComparisonView {

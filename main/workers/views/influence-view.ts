@@ -2,7 +2,7 @@ import { InputError } from '../../../src/study/input-error';
 import { isAbsent, type Measure } from '../../../src/audit/measure';
 import { binRange } from '../../../src/study/axis';
 import type { InfluenceView } from '../../bridge';
-import type { Audited } from '../matrix-task';
+import type { Audited } from '../analysis';
 
 /** The influence of the matrix on the reference spectrum, as the window draws it. Throws `InputError` where it has no meaning. */
 export function influenceView({ deep, reference, analysis }: Audited): InfluenceView {

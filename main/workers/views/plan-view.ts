@@ -3,7 +3,7 @@ import { planCampaign, planEfficiency, planFlag, planMatrixShare, type Plan } fr
 import { isAbsent } from '../../../src/audit/measure';
 import { binRange } from '../../../src/study/axis';
 import type { Checked, PlanView } from '../../bridge';
-import type { Audited } from '../matrix-task';
+import type { Audited } from '../analysis';
 
 type Target = Checked<'plan'>['target'];
 type Ratios = Pick<PlanView, 'before' | 'after'>;

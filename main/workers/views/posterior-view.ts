@@ -1,5 +1,5 @@
 import type { PosteriorView } from '../../bridge';
-import type { Analysis } from '../matrix-task';
+import type { Analysis } from '../analysis';
 
 /** The posterior of every cell as the window shows it; `seconds` is left to the caller. */
 export function posteriorView(analysis: Analysis): PosteriorView {

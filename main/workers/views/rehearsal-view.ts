@@ -1,7 +1,7 @@
 import { REHEARSAL, rehearse, type Rehearsal, type WayOfInferring } from '../../../src/audit/rehearsal';
 import { InputError } from '../../../src/study/input-error';
 import type { Estimates, RehearsalSide, RehearsalView } from '../../bridge';
-import type { Audited } from '../matrix-task';
+import type { Audited } from '../analysis';
 
 /** Rehearses the matrix's use, telling `note` the share that is done. Throws `InputError` where it has no meaning. */
 export function rehearsalView(

@@ -1,7 +1,7 @@
 import { priorSensitivityOf } from '../../../src/audit/prior-sensitivity';
 import type { Flag } from '../../../src/audit/flag';
 import type { PriorSensitivityView } from '../../bridge';
-import type { Analysis } from '../matrix-task';
+import type { Analysis } from '../analysis';
 
 /** The study under the usual priors side by side. */
 export function sensitivityView(analysis: Analysis): PriorSensitivityView {
