@@ -209,8 +209,8 @@ const MOST: u64 = 1_000_000_000_000_000_000;
 const LARGEST_POWER: usize = 22;
 
 /**
- * Writes the number `[from, to)` to `into` and returns true: digits, at most 24 bytes of them, with at most one point and a
- * minus sign, or nothing at all (`NaN`). Correctly rounded. False for anything else, for too many digits, and where the
+ * Writes the number `[from, to)` to `into` and returns true: digits, at most 24 bytes of them, with at most one point, a
+ * minus sign and an exponent, or nothing at all (`NaN`). Correctly rounded. False for anything else, for too many digits, and where the
  * nearest double is too hard to tell.
  */
 function readNumber(from: usize, to: usize, into: usize): bool {
@@ -235,37 +235,58 @@ function readNumber(from: usize, to: usize, into: usize): bool {
     // The digits before the point move up over it, behind another zero.
     digits = (digits & ~((before << 8) | 0xff)) | ((digits & before) << 8) | 0x30;
   }
-  if (!areDigits(digits)) return false;
+  if (!areDigits(digits)) return length > 4 ? readLong(begin, to, negative, into) : false;
   write(<f64>(<i64>valueOf(digits)) / power(scale), negative, into);
   return true;
 }
 
-/** `readNumber` of 9 to 24 bytes. */
+/** `readNumber` of 5 to 24 bytes, perhaps with an exponent of a sign and two digits. */
 function readLong(begin: usize, to: usize, negative: bool, into: usize): bool {
-  const dot = dotBetween(begin, to);
+  const exponent = exponentBefore(to);
+  const end = exponent == NO_EXPONENT ? to : to - 4;
+  const dot = dotBetween(begin, end);
   const whole = longValue(begin, dot);
-  if (dot == to) return whole <= EXACT ? write(<f64>(<i64>whole), negative, into) : false;
-  const scale = to - dot - 1;
-  const fraction = longValue(dot + 1, to);
-  if (whole > MOST || fraction > MOST || scale > LARGEST_POWER) return false;
-  const by = power(scale);
+  const scale = dot < end ? end - dot - 1 : 0;
+  const fraction = scale > 0 ? longValue(dot + 1, end) : 0;
+  if (whole > MOST || fraction > MOST || scale > LARGEST_POWER || (dot == begin && scale == 0)) return false;
   // Rounding may lose what is far below the limit, never what would be above it.
-  if (<f64>(<i64>whole) * by + <f64>(<i64>fraction) > <f64>MOST) return false;
-  const value = whole == 0 ? fraction : whole * <u64>by + fraction;
-  if (value <= EXACT) return write(<f64>(<i64>value) / by, negative, into);
-  return divide(value, by, negative, into);
+  if (<f64>(<i64>whole) * power(scale) + <f64>(<i64>fraction) > <f64>MOST) return false;
+  const value = whole == 0 ? fraction : whole * <u64>power(scale) + fraction;
+  const ten = (exponent == NO_EXPONENT ? 0 : exponent) - <i32>scale;
+  if (abs(ten) > <i32>LARGEST_POWER || (value > EXACT && ten > 0)) return false;
+  const size = <f64>(<i64>value);
+  if (ten > 0) return write(size * power(ten), negative, into);
+  if (ten == 0 || value <= EXACT) return write(size / power(-ten), negative, into);
+  return divide(value, power(-ten), negative, into);
 }
 
-/** The place of the first point in `[begin, to)`, 9 to 24 bytes; `to` where there is none. */
+const NO_EXPONENT: i32 = i32.MIN_VALUE;
+const EXPONENT: u8 = 101;
+const PLUS: u8 = 43;
+
+/** The exponent in the last four bytes before `to`: `e`, a sign, two digits. */
+function exponentBefore(to: usize): i32 {
+  if ((load<u8>(to - 4) | 32) != EXPONENT) return NO_EXPONENT;
+  const sign = load<u8>(to - 3);
+  const tens = <u32>load<u8>(to - 2) - 48;
+  const ones = <u32>load<u8>(to - 1) - 48;
+  if (tens > 9 || ones > 9 || (sign != MINUS && sign != PLUS)) return NO_EXPONENT;
+  const size = <i32>(10 * tens + ones);
+  return sign == MINUS ? -size : size;
+}
+
+/** The place of the first point in `[begin, to)`, up to 24 bytes; `to` where there is none. */
 function dotBetween(begin: usize, to: usize): usize {
   const length = to - begin;
   if (length > 16) {
     const dot = dotIn(lastBytes(to - 16, length - 16));
     if (dot != 0) return to - 24 + <usize>(ctz(dot) >> 3);
   }
-  const middle = dotIn(lastBytes(to - 8, min<usize>(length - 8, 8)));
-  if (middle != 0) return to - 16 + <usize>(ctz(middle) >> 3);
-  const last = dotIn(load<u64>(to - 8));
+  if (length > 8) {
+    const dot = dotIn(lastBytes(to - 8, min<usize>(length - 8, 8)));
+    if (dot != 0) return to - 16 + <usize>(ctz(dot) >> 3);
+  }
+  const last = dotIn(lastBytes(to, min<usize>(length, 8)));
   return last == 0 ? to : to - 8 + <usize>(ctz(last) >> 3);
 }
 
