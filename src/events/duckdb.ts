@@ -1,5 +1,5 @@
 import { tmpdir } from 'node:os';
-import type { DuckDBConnection, DuckDBDataChunk, DuckDBValue } from '@duckdb/node-api';
+import type { DuckDBConnection, DuckDBDataChunk, DuckDBInstance, DuckDBValue } from '@duckdb/node-api';
 import { Cancelled, InputError } from '../study/input-error';
 
 /** Threads of one reading: DuckDB decodes beside the thread that takes the values, and files are split over workers. */
@@ -7,8 +7,12 @@ const THREADS = '1';
 /** What DuckDB may hold, a few row groups: its own limit would be a share of the whole machine. */
 const MEMORY = '400MB';
 
-/** Settings in the order that locks: the one path, then nothing else, then nothing more to be set. */
+/**
+ * Settings in the order that locks: footers are kept, the one path may be reached, then nothing else, then nothing more may
+ * be set.
+ */
 const LOCKS = [
+  'SET parquet_metadata_cache = true',
   'SET allowed_paths = [$1]',
   'SET enable_external_access = false',
   'SET lock_configuration = true',
@@ -29,6 +33,40 @@ export interface Query {
   to: number;
 }
 
+/** The databases in use, by the path they can reach: the units of a file share one, for to make it takes as long as a million rows. */
+const databases = new Map<string, { instance: Promise<DuckDBInstance>; users: number }>();
+
+function take(path: string): Promise<DuckDBInstance> {
+  const database = databases.get(path) ?? { instance: lockedTo(path), users: 0 };
+  databases.set(path, database);
+  database.users++;
+  // One that could not be made is no use to the next one who asks.
+  database.instance.catch(() => databases.delete(path));
+  return database.instance;
+}
+
+async function give(path: string): Promise<void> {
+  const database = databases.get(path)!;
+  if (--database.users > 0) return;
+  databases.delete(path);
+  (await database.instance).closeSync();
+}
+
+async function lockedTo(path: string): Promise<DuckDBInstance> {
+  const { DuckDBInstance } = await import('@duckdb/node-api');
+  const instance = await DuckDBInstance.create(':memory:', {
+    threads: THREADS,
+    memory_limit: MEMORY,
+    temp_directory: tmpdir(),
+    autoinstall_known_extensions: 'false',
+    autoload_known_extensions: 'false',
+  });
+  const connection = await instance.connect();
+  for (const lock of LOCKS) await connection.run(lock, lock.includes('$1') ? [path] : []);
+  connection.closeSync();
+  return instance;
+}
+
 /**
  * One connection to a database in memory that can reach one file and nothing else. The file's path is always bound, and
  * its columns are named by position: no text of a study or file ever becomes SQL.
@@ -36,7 +74,6 @@ export interface Query {
 export class OneFile {
   private constructor(
     private readonly connection: DuckDBConnection,
-    private readonly closeAll: () => void,
     private readonly path: string,
     private readonly name: string,
     /** A table function of the path `$1`. */
@@ -44,25 +81,13 @@ export class OneFile {
   ) {}
 
   static async open(path: string, name: string, table: string): Promise<OneFile> {
-    const { DuckDBInstance } = await import('@duckdb/node-api');
-    const instance = await DuckDBInstance.create(':memory:', {
-      threads: THREADS,
-      memory_limit: MEMORY,
-      temp_directory: tmpdir(),
-      autoinstall_known_extensions: 'false',
-      autoload_known_extensions: 'false',
-    });
-    const connection = await instance.connect();
-    for (const lock of LOCKS) await connection.run(lock, lock.includes('$1') ? [path] : []);
-    const closeAll = (): void => {
-      connection.closeSync();
-      instance.closeSync();
-    };
-    return new OneFile(connection, closeAll, path, name, table);
+    const connection = await (await take(path)).connect();
+    return new OneFile(connection, path, name, table);
   }
 
   close(): void {
-    this.closeAll();
+    this.connection.closeSync();
+    void give(this.path);
   }
 
   /** All columns, in order. Throws `InputError` where the file is damaged or of another format. */
@@ -80,6 +105,17 @@ export class OneFile {
     try {
       const result = await this.connection.run(`SELECT count(*)::DOUBLE FROM ${this.table}`, [this.path]);
       return (await result.getRowsJS())[0][0] as number;
+    } catch (cause) {
+      throw this.fault(0, cause);
+    }
+  }
+
+  /** Rows of the first group of rows; 0 where there is none. Writers make all groups but the last alike. */
+  async rowsOfGroup(): Promise<number> {
+    try {
+      const sql = 'SELECT row_group_num_rows::DOUBLE FROM parquet_metadata($1) LIMIT 1';
+      const rows = await (await this.connection.run(sql, [this.path])).getRowsJS();
+      return (rows[0]?.[0] ?? 0) as number;
     } catch (cause) {
       throw this.fault(0, cause);
     }

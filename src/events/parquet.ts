@@ -38,10 +38,10 @@ export const parquet: Reader = {
   },
 
   async plan(path, name, needs, pieces) {
-    const [columns, rows] = await withFile(
+    const [columns, rows, group] = await withFile(
       path,
       name,
-      async (file) => [await file.columns(), await file.count()] as const,
+      async (file) => [await file.columns(), await file.count(), await file.rowsOfGroup()] as const,
     );
     const names = columns.slice(0, -1).map((column) => column.name);
     const positions = positionsOf(needs, names, name);
@@ -49,7 +49,9 @@ export const parquet: Reader = {
     needs.forEach((need, i) => ask(need, types[i], 'c', name));
     const bytes = sizeOf(path, name);
     const share = (row: number): number => (rows === 0 ? bytes : Math.round((bytes * row) / rows));
-    return rowRanges(rows, pieces, 1, LEAST_ROWS).map(({ from, to }) => {
+    // Between groups of rows where there are enough of them: one that is cut is decoded twice.
+    const step = group > 0 && group * pieces <= rows ? group : 1;
+    return rowRanges(rows, pieces, step, LEAST_ROWS).map(({ from, to }) => {
       const detail: Detail = { columns: columns.length, from, to, positions, types };
       return {
         path,

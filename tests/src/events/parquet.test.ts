@@ -133,6 +133,34 @@ describe('a Parquet file', () => {
   });
 });
 
+describe('a large Parquet file', () => {
+  test('is cut between its groups of rows where there are enough of them, and its units share one database', async () => {
+    const path = await table('SELECT i AS t, i / 2 AS r FROM range(2500000) x(i)', ', ROW_GROUP_SIZE 122880');
+    const needs = needsOf('t', 'r');
+    const units = await parquet.plan(path, 'events', needs, 8);
+    expect(units.map(({ rowsBefore }) => rowsBefore)).toEqual([0, 10 * 122880]);
+    const sums = await Promise.all(
+      units.map(async (unit) => {
+        let [rows, sum] = [0, 0];
+        for await (const batch of parquet.read(unit, needs)) {
+          rows += batch.rows;
+          const [t] = batch.columns;
+          if (t.as === 'number') for (const value of t.values) sum += value;
+        }
+        return { rows, sum };
+      }),
+    );
+    expect(sums.reduce((all, { rows }) => all + rows, 0)).toBe(2_500_000);
+    expect(sums.reduce((all, { sum }) => all + sum, 0)).toBe((2_500_000 * 2_499_999) / 2);
+  });
+
+  test('of one group is cut all the same', async () => {
+    const path = await table('SELECT i AS t, i AS r FROM range(2100000) x(i)', ', ROW_GROUP_SIZE 4000000');
+    const units = await parquet.plan(path, 'events', needsOf('t', 'r'), 8);
+    expect(units.map(({ rowsBefore }) => rowsBefore)).toEqual([0, 1_050_000]);
+  });
+});
+
 describe('a Parquet file that cannot serve is refused in one line', () => {
   test('when a needed column is absent or of an unsuitable type', async () => {
     const path = await table(`SELECT 1 AS t, [1, 2] AS list, DATE '2026-12-01' AS day, {'a': 1} AS s`);
