@@ -2,7 +2,7 @@
  * Entasis as a library: `import { ... } from 'entasis'`. The way of the data, in the order of use:
  *
  * 1. A study says what to do: `parseStudy`.
- * 2. Events become a tally: `tallyTable` (arrays in memory), `tallyFiles` (the study's files).
+ * 2. Events become a tally: `tallyTable` (arrays in memory), `tallyFiles` (the study's files); `readerFor` reads the files alone.
  * 3. A tally becomes a posterior, a summary and an audit: `analyse`.
  * 4. The posterior gives replicas of the response matrix: `drawReplicas`.
  * 5. A bundle that the program has written is opened and handed on: `openBundle`, `replicaBlocks`, `formatOf`.
@@ -26,7 +26,8 @@ export type { Axis, NumericAxis, TagAxis } from './study/axis';
 export { inspectFile } from './events/inspect';
 export { proposeStudy } from './events/propose-study';
 export type { ProposedStudy, Role } from './events/propose-study';
-export type { ColumnFacts, FileFacts, Reject } from './events/batch';
+export { readerFor } from './events/formats';
+export type { Batch, ColumnFacts, FileFacts, Need, Reader, Reject, Unit } from './events/batch';
 export { tallyTable, type EventColumn } from './tally/tally-table';
 export { tallyFiles, type TallyFilesOptions } from './tally/tally-files';
 export { ledgerBalances, type Ledger } from './tally/ledger';

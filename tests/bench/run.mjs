@@ -8,6 +8,7 @@ import { fileURLToPath } from 'node:url';
 import { DuckDBInstance } from '@duckdb/node-api';
 import { kernelSeconds } from './kernel.mjs';
 import { writeEvents } from './make-events.mjs';
+import { readingSeconds } from './reading.mjs';
 import { inTurn, wholeProcess } from './whole-process.mjs';
 
 const LARGE = process.argv.includes('--large');
@@ -146,6 +147,15 @@ async function parquet(count) {
     '-',
     '-',
     `peak ${number(peak, 0)} MB`,
+  );
+  const needs = ['t', 'r'].map((column) => ({ column, as: 'number' }));
+  const reading = await readingSeconds(at('events.parquet'), needs, 2);
+  if (reading.rows !== count) throw new Error(`${reading.rows} rows were read, not ${count}`);
+  report(
+    `reading ${count / 1e6} M rows of Parquet, 2 workers, no tally and no hash`,
+    `${number(reading.seconds)} s = ${number(count / reading.seconds / 1e6, 1)} Mrow/s`,
+    '-',
+    '-',
   );
 }
 
