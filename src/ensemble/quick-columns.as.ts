@@ -1,13 +1,16 @@
 import { exp } from '../numerics/exp-log.as';
 import { fillVariatesAbove } from '../numerics/gamma-variate.as';
-import { fillExponentials, fillHalfNormals, FREE } from '../numerics/ziggurat.as';
+import { STATE } from '../numerics/xoshiro.as';
+import { fillExponentials, fillHalfNormals, FREE, TABLES } from '../numerics/ziggurat.as';
 
 /**
  * AssemblyScript: built to WebAssembly (see DEVELOPERS.md). Draws columns bit for bit as `draw.ts` does; the modules it
  * imports repeat those of their name. `quick-columns.ts` lays out the memory.
  */
 
-/** Where the arrays of a column begin. */
+/** Where the stream's state stands, the tables of layers, and the first byte that is free. */
+export const state: i32 = <i32>STATE;
+export const tables: i32 = <i32>TABLES;
 export const free: i32 = <i32>FREE;
 
 let outcomes: i32 = 0;

@@ -1,8 +1,12 @@
+import { Assembly, Layout, whereGranted } from '../numerics/assembly';
 import { EXPONENTIAL, NORMAL } from '../numerics/ziggurat';
 import type { ColumnPlan } from './column-plan';
 import code from './quick-columns.as?assembly';
 
 interface Exports {
+  /** Addresses: of the stream's state, of the tables of layers, of the first byte behind these. */
+  state: WebAssembly.Global;
+  tables: WebAssembly.Global;
   free: WebAssembly.Global;
   begin(...addresses: number[]): void;
   draw(
@@ -16,12 +20,7 @@ interface Exports {
   ): void;
 }
 
-const PAGE = 65_536;
-/** Addresses that `xoshiro.as.ts` and `ziggurat.as.ts` know. */
-const STATE = 16;
-const TABLES = 32;
-
-let module: WebAssembly.Module | null = null;
+const assembly = new Assembly<Exports>(code);
 
 /**
  * Draws the replicas of columns in WebAssembly (`quick-columns.as.ts`): the same bytes as `draw.ts` alone would give, in half the
@@ -39,40 +38,34 @@ export class QuickColumns {
 
   /**
    * For columns of `outcomes` outcomes and at most `replicas` replicas at a time. `null` where the system grants no
-   * memory for it (it takes gigabytes of addresses, though few are ever used).
+   * memory for it.
    */
   static over(outcomes: number, replicas: number): QuickColumns | null {
-    try {
-      return new QuickColumns(outcomes, replicas);
-    } catch (error) {
-      if (error instanceof RangeError) return null;
-      throw error;
-    }
+    return whereGranted(() => new QuickColumns(outcomes, replicas));
   }
 
   private constructor(outcomes: number, replicas: number) {
     const memory = new WebAssembly.Memory({ initial: 1 });
-    module ??= new WebAssembly.Module(Buffer.from(code, 'base64'));
-    this.exports = new WebAssembly.Instance(module, { env: { memory } }).exports as unknown as Exports;
-    let end = this.exports.free.value as number;
-    const place = (bytes: number): number => (end = Math.ceil((end + bytes) / 8) * 8) - Math.ceil(bytes / 8) * 8;
+    this.exports = assembly.in(memory);
+    const { state, tables, free } = this.exports;
+    const layout = new Layout(free.value as number, 8);
     const [variates, exponentials, offset, slope, reciprocal, scale] = Array.from({ length: 6 }, () =>
-      place(8 * outcomes),
+      layout.place(8 * outcomes),
     );
-    const cells = place(4 * outcomes);
-    const words = place(4 * outcomes);
-    const list = place(4 * (outcomes + 1));
-    const rows = place(8 * outcomes * replicas);
-    memory.grow(Math.max(0, Math.ceil(end / PAGE) - 1));
+    const cells = layout.place(4 * outcomes);
+    const words = layout.place(4 * outcomes);
+    const list = layout.place(4 * (outcomes + 1));
+    const rows = layout.place(8 * outcomes * replicas);
+    layout.over(memory);
     this.exports.begin(outcomes, cells, variates!, exponentials!, offset!, slope!, reciprocal!, scale!, words, list);
 
     const { buffer } = memory;
-    let table = TABLES;
+    let table = tables.value as number;
     for (const values of [NORMAL, EXPONENTIAL].flatMap(({ edge, step, height }) => [edge, step, height])) {
       new Float64Array(buffer, table, values.length).set(values);
       table += values.byteLength;
     }
-    this.state = new Int32Array(buffer, STATE, 4);
+    this.state = new Int32Array(buffer, state.value as number, 4);
     this.offset = new Float64Array(buffer, offset, outcomes);
     this.slope = new Float64Array(buffer, slope, outcomes);
     this.reciprocal = new Float64Array(buffer, reciprocal, outcomes);

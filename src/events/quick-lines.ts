@@ -1,3 +1,4 @@
+import { Assembly, Layout, whereGranted } from '../numerics/assembly';
 import { LONGEST_LINE, ROOM } from './lines';
 import code from './quick-lines.as?assembly';
 
@@ -6,7 +7,7 @@ export const SKIPPED = 0;
 export const NUMBER = 1;
 export const OTHER = 2;
 
-/** A field left to the caller: row, field, and its bytes `[begin, end)`, quotes set aside. */
+/** A field left to the caller: row, field, and its bytes `[begin, end)`, quotes and the blanks at its ends set aside. */
 export const LEFTOVER = 4;
 
 /** Bytes whose stops are found at a time: their list stays in the first-level cache. */
@@ -21,7 +22,6 @@ const FEW = 16;
 const LONGEST_PAUSE = 255;
 /** Bytes that may be read before and behind the lines. */
 const MARGIN = 64;
-const PAGE = 65_536;
 /** Powers of ten that are exact as doubles, from 10^0. */
 const POWERS = 23;
 
@@ -32,7 +32,7 @@ interface Exports {
   left: WebAssembly.Global;
 }
 
-let module: WebAssembly.Module | null = null;
+const assembly = new Assembly<Exports>(code);
 /** Memories given back: a file is read in many units, and each memory takes gigabytes of addresses. */
 const spares: WebAssembly.Memory[] = [];
 
@@ -61,37 +61,27 @@ export class QuickLines {
 
   /**
    * For a table whose fields are of the given kinds, `capacity` rows at a time. `null` where the system grants no memory
-   * for it (it takes gigabytes of addresses, though few are ever used).
+   * for it.
    */
   static over(kinds: Uint8Array, delimiter: number, capacity: number): QuickLines | null {
-    try {
-      return new QuickLines(kinds, delimiter, capacity);
-    } catch (error) {
-      if (error instanceof RangeError) return null;
-      throw error;
-    }
+    return whereGranted(() => new QuickLines(kinds, delimiter, capacity));
   }
 
   private constructor(kinds: Uint8Array, delimiter: number, capacity: number) {
     const stretch = Math.min(LONGEST_LINE, STRETCH + STRETCH_A_FIELD * kinds.length);
     const needed = kinds.filter((kind) => kind !== SKIPPED).length;
-    let bytes = 0;
-    const place = (size: number): number => {
-      const at = Math.ceil(bytes / MARGIN) * MARGIN;
-      bytes = at + size;
-      return at;
-    };
-    const roomAt = place(ROOM + 2 * MARGIN) + MARGIN;
-    const kindsAt = place(kinds.length);
-    const targetsAt = place(4 * kinds.length);
-    const powersAt = place(8 * POWERS);
+    const layout = new Layout(0, MARGIN);
+    const roomAt = layout.place(ROOM + 2 * MARGIN) + MARGIN;
+    const kindsAt = layout.place(kinds.length);
+    const targetsAt = layout.place(4 * kinds.length);
+    const powersAt = layout.place(8 * POWERS);
     // One stop more than there can be: they are written by twos.
-    const stopsAt = place(4 * (stretch + 1));
-    const beginsAt = place(4 * capacity);
-    const leftoversAt = place(4 * LEFTOVER * needed * capacity);
-    const targets = Array.from(kinds, (kind) => (kind === SKIPPED ? 0 : place(8 * capacity)));
+    const stopsAt = layout.place(4 * (stretch + 1));
+    const beginsAt = layout.place(4 * capacity);
+    const leftoversAt = layout.place(4 * LEFTOVER * needed * capacity);
+    const targets = Array.from(kinds, (kind) => (kind === SKIPPED ? 0 : layout.place(8 * capacity)));
 
-    this.memory = memoryOf(bytes);
+    this.memory = layout.over(spares.pop());
     const { buffer } = this.memory;
     this.room = Buffer.from(buffer, roomAt, ROOM);
     this.numbers = targets.map((at) => new Float64Array(buffer, at, at === 0 ? 0 : capacity));
@@ -101,9 +91,7 @@ export class QuickLines {
     this.kinds.set(kinds);
     new Uint32Array(buffer, targetsAt, kinds.length).set(targets);
     new Float64Array(buffer, powersAt, POWERS).set(Array.from({ length: POWERS }, (_, k) => Number(`1e${k}`)));
-    module ??= new WebAssembly.Module(Buffer.from(code, 'base64'));
-    const { exports } = new WebAssembly.Instance(module, { env: { memory: this.memory } });
-    this.exports = exports as unknown as Exports;
+    this.exports = assembly.in(this.memory);
     this.exports.begin(
       kinds.length,
       delimiter,
@@ -142,13 +130,4 @@ export class QuickLines {
   close(): void {
     spares.push(this.memory);
   }
-}
-
-function memoryOf(bytes: number): WebAssembly.Memory {
-  const pages = Math.ceil(bytes / PAGE);
-  const spare = spares.pop();
-  if (spare === undefined) return new WebAssembly.Memory({ initial: pages });
-  const missing = pages - spare.buffer.byteLength / PAGE;
-  if (missing > 0) spare.grow(missing);
-  return spare;
 }

@@ -12,8 +12,9 @@ const EXPONENTIAL_TAIL: f64 = 7.69711747013105;
 /** A table of layers is 257 edges, then as many steps, then as many heights. */
 const STEPS: usize = 8 * 257;
 const HEIGHTS: usize = 2 * STEPS;
-/** Addresses of the two tables; `quick-columns.ts` fills them. */
-const NORMAL: usize = 32;
+/** Address of the two tables; `quick-columns.ts` fills them. */
+export const TABLES: usize = 32;
+const NORMAL: usize = TABLES;
 const EXPONENTIAL: usize = NORMAL + 3 * STEPS;
 /** The first byte behind what stands at a fixed address. */
 export const FREE: usize = EXPONENTIAL + 3 * STEPS;
@@ -76,16 +77,17 @@ function normalTail(): f64 {
 
 /** Fills `out` with `count` half normals; `list` has room for as many words and one more. */
 export function fillHalfNormals(out: usize, count: i32, list: usize): void {
-  const end = fillPlaces(NORMAL, UNSIGNED, out, count, list);
-  for (let r = list; r < end; r += 4) {
-    const at = placeAt(out, r);
-    store<f64>(at, normalRest(load<u32>(r) & LAYER_MASK, load<f64>(at)));
-  }
+  fillNormalsOf(UNSIGNED, out, count, list);
 }
 
 /** Fills `out` with normals. */
 export function fillNormals(out: usize, count: i32, list: usize): void {
-  const end = fillPlaces(NORMAL, SIGNED, out, count, list);
+  fillNormalsOf(SIGNED, out, count, list);
+}
+
+/** Those rejected keep the sign that their places have. */
+function fillNormalsOf(signs: u32, out: usize, count: i32, list: usize): void {
+  const end = fillPlaces(NORMAL, signs, out, count, list);
   for (let r = list; r < end; r += 4) {
     const at = placeAt(out, r);
     const x = load<f64>(at);

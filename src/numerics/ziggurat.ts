@@ -110,17 +110,18 @@ export class Room {
 }
 
 /** Fills `out` with `halfNormal` variates: two words for each, then more for those rejected, in their order. */
-export function fillHalfNormals(stream: RandomStream, out: Float64Array, { rejected }: Room): void {
-  const rejects = fillPlaces(stream.state, NORMAL, UNSIGNED, out, rejected);
-  for (let r = 0; r < rejects; r++) {
-    const i = rejected[r]! >>> 8;
-    out[i] = normalRest(stream, rejected[r]! & LAYER_MASK, out[i]!);
-  }
+export function fillHalfNormals(stream: RandomStream, out: Float64Array, room: Room): void {
+  fillNormalsOf(stream, UNSIGNED, out, room);
 }
 
 /** Fills `out` with `normal` variates. */
-export function fillNormals(stream: RandomStream, out: Float64Array, { rejected }: Room): void {
-  const rejects = fillPlaces(stream.state, NORMAL, SIGNED, out, rejected);
+export function fillNormals(stream: RandomStream, out: Float64Array, room: Room): void {
+  fillNormalsOf(stream, SIGNED, out, room);
+}
+
+/** Those rejected keep the sign that their places have. */
+function fillNormalsOf(stream: RandomStream, signs: number, out: Float64Array, { rejected }: Room): void {
+  const rejects = fillPlaces(stream.state, NORMAL, signs, out, rejected);
   for (let r = 0; r < rejects; r++) {
     const i = rejected[r]! >>> 8;
     out[i] = Math.sign(out[i]!) * normalRest(stream, rejected[r]! & LAYER_MASK, Math.abs(out[i]!));
