@@ -77,16 +77,11 @@ function skipBlanks(bytes: Uint8Array, from: number, to: number, delimiter: numb
 
 /** Whether there is nothing but blanks in `bytes[from, to)`. An empty field in quotes is something. */
 export function isBlank(bytes: Uint8Array, from: number, to: number): boolean {
-  return trimmedStart(bytes, from, to) === to;
-}
-
-/** The begin of `bytes[from, to)` without blanks. */
-export function trimmedStart(bytes: Uint8Array, from: number, to: number): number {
-  return skipBlanks(bytes, from, to, -1);
+  return skipBlanks(bytes, from, to, -1) === to;
 }
 
 /** The end of `bytes[from, to)` without blanks. */
-export function trimmedEnd(bytes: Uint8Array, from: number, to: number): number {
+function trimmedEnd(bytes: Uint8Array, from: number, to: number): number {
   let end = to;
   while (end > from && (bytes[end - 1] === SPACE || bytes[end - 1] === TAB)) end--;
   return end;

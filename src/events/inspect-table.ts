@@ -3,7 +3,7 @@ import { stopIfCancelled } from '../study/input-error';
 import type { FileFacts } from './batch';
 import { sizeOf } from './byte-source';
 import { Census } from './census';
-import { Fields, isBlank, trimmedEnd, trimmedStart } from './fields';
+import { Fields, isBlank } from './fields';
 import { LineBlocks, LONGEST_LINE, type Block } from './lines';
 import { compressionOf, openBytes } from './open-bytes';
 import { LEFTOVER, NUMBER, OTHER, QuickLines } from './quick-lines';
@@ -93,8 +93,7 @@ class TableCensus {
     for (let at = 0; at < left * LEFTOVER; at += LEFTOVER) {
       const field = leftovers[at + 1];
       if (kinds[field] === NUMBER) numbers[field][leftovers[at]] = LEFT;
-      const begin = trimmedStart(bytes, leftovers[at + 2], leftovers[at + 3]);
-      columns[field].add(bytes, begin, trimmedEnd(bytes, begin, leftovers[at + 3]));
+      columns[field].add(bytes, leftovers[at + 2], leftovers[at + 3]);
     }
     for (let field = 0; field < columns.length; field++) {
       const column = columns[field];

@@ -41,7 +41,7 @@ export function parseNumber(bytes: Uint8Array, from: number, to: number): number
  * of programs that print doubles in full, are divided in double-double arithmetic (Dekker, Numer. Math. 18 (1971)
  * 224); where its error bound could touch a rounding boundary, and for everything else, `Number` reads the text.
  */
-export function readDecimal(bytes: Uint8Array, from: number, to: number, into: Float64Array, at: number): number {
+function readDecimal(bytes: Uint8Array, from: number, to: number, into: Float64Array, at: number): number {
   let p = from;
   const negative = bytes[p] === MINUS;
   if (negative || bytes[p] === PLUS) p++;

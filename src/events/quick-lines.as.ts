@@ -6,6 +6,7 @@
 
 const LINE_FEED: u8 = 10;
 const RETURN: u8 = 13;
+const TAB: u8 = 9;
 const SPACE: u8 = 32;
 const QUOTE: u8 = 34;
 const MINUS: u8 = 45;
@@ -29,7 +30,7 @@ let targets: usize = 0;
 let stops: usize = 0;
 /** begins of lines, in the room (u32 a row); */
 let begins: usize = 0;
-/** fields left to the caller (four u32 each: row, field, begin and end in the room); */
+/** fields left to the caller (four u32 each: row, field, begin and end in the room, without blanks at either end); */
 let leftovers: usize = 0;
 /** powers of ten (f64). */
 let powers: usize = 0;
@@ -162,6 +163,8 @@ function parseStretch(from: usize, end: usize): usize {
       const kind = load<u8>(kinds + field);
       if (kind == SKIPPED) continue;
       if (kind == NUMBER && readNumber(from, to, load<u32>(targets + (field << 2)) + (row << 3))) continue;
+      while (from < to && isBlank(load<u8>(from))) from++;
+      while (to > from && isBlank(load<u8>(to - 1))) to--;
       store<u32>(after, row);
       store<u32>(after, field, 4);
       store<u32>(after, <u32>(from - room), 8);
@@ -186,6 +189,10 @@ function parseStretch(from: usize, end: usize): usize {
   rows = row;
   left = <i32>((leftover - leftovers) >> 4);
   return line;
+}
+
+function isBlank(byte: u8): bool {
+  return byte == SPACE || byte == TAB;
 }
 
 /** Whether nothing, or a blank, stands before the end of the line that ends before `next`. */

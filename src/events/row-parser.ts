@@ -1,11 +1,11 @@
 import type { Need } from './batch';
 import type { BatchBuilder } from './batch-builder';
 import { decode } from './dictionary';
-import { Fields, isBlank, trimmedEnd, trimmedStart } from './fields';
+import { Fields, isBlank } from './fields';
 import { identify } from './identity';
 import type { LineParser } from './line-units';
 import { LONGEST_LINE } from './lines';
-import { isMissing, parseNumber, readDecimal } from './number';
+import { isMissing, parseNumber } from './number';
 import { LEFTOVER, NUMBER, OTHER, QuickLines, SKIPPED } from './quick-lines';
 
 /** Where the columns of a delimited table stand: plain data, found once when the file is planned. */
@@ -104,16 +104,12 @@ export class RowParser implements LineParser {
 
   /** Writes the numbers that the quick way left; the first row that lacks one, -1 where none does. */
   private fillLeftNumbers({ left, leftovers }: QuickLines, bytes: Uint8Array): number {
-    const { asNumber, kinds, needsOf, builder } = this;
+    const { asNumber } = this;
     for (let at = 0; at < left * LEFTOVER; at += LEFTOVER) {
       const field = leftovers[at + 1];
       if (asNumber[field] === 0) continue;
       const row = leftovers[at];
-      const from = trimmedStart(bytes, leftovers[at + 2], leftovers[at + 3]);
-      const to = trimmedEnd(bytes, from, leftovers[at + 3]);
-      const alone = kinds[field] === NUMBER && from < to;
-      if (alone && readDecimal(bytes, from, to, builder.numbers[needsOf[field][0]], row) === to) continue;
-      if (!this.fillNumbers(bytes, field, from, to, row)) return row;
+      if (!this.fillNumbers(bytes, field, leftovers[at + 2], leftovers[at + 3], row)) return row;
     }
     return -1;
   }
@@ -124,8 +120,7 @@ export class RowParser implements LineParser {
     for (let at = 0; at < left * LEFTOVER && leftovers[at] < rows; at += LEFTOVER) {
       const field = leftovers[at + 1];
       if (asText[field] === 0) continue;
-      const from = trimmedStart(bytes, leftovers[at + 2], leftovers[at + 3]);
-      this.fillTexts(bytes, field, from, trimmedEnd(bytes, from, leftovers[at + 3]), leftovers[at]);
+      this.fillTexts(bytes, field, leftovers[at + 2], leftovers[at + 3], leftovers[at]);
     }
   }
 
