@@ -18,6 +18,10 @@ const LOCKS = [
   'SET lock_configuration = true',
 ] as const;
 
+/** The file of the path `$1` as a table, the number of each row in a last column. */
+const TABLE =
+  'read_parquet($1, hive_partitioning = false, union_by_name = false, filename = false, file_row_number = true)';
+
 /** A column of a file as DuckDB tells it. */
 export interface TypedColumn {
   name: string;
@@ -37,11 +41,14 @@ export interface Query {
 const databases = new Map<string, { instance: Promise<DuckDBInstance>; users: number }>();
 
 function take(path: string): Promise<DuckDBInstance> {
-  const database = databases.get(path) ?? { instance: lockedTo(path), users: 0 };
-  databases.set(path, database);
+  let database = databases.get(path);
+  if (database === undefined) {
+    database = { instance: lockedTo(path), users: 0 };
+    databases.set(path, database);
+    // One that could not be made is no use to the next one who asks.
+    database.instance.catch(() => databases.delete(path));
+  }
   database.users++;
-  // One that could not be made is no use to the next one who asks.
-  database.instance.catch(() => databases.delete(path));
   return database.instance;
 }
 
@@ -76,13 +83,11 @@ export class OneFile {
     private readonly connection: DuckDBConnection,
     private readonly path: string,
     private readonly name: string,
-    /** A table function of the path `$1`. */
-    private readonly table: string,
   ) {}
 
-  static async open(path: string, name: string, table: string): Promise<OneFile> {
+  static async open(path: string, name: string): Promise<OneFile> {
     const connection = await (await take(path)).connect();
-    return new OneFile(connection, path, name, table);
+    return new OneFile(connection, path, name);
   }
 
   close(): void {
@@ -93,7 +98,7 @@ export class OneFile {
   /** All columns, in order. Throws `InputError` where the file is damaged or of another format. */
   async columns(): Promise<TypedColumn[]> {
     try {
-      const result = await this.connection.run(`SELECT * FROM ${this.table} LIMIT 0`, [this.path]);
+      const result = await this.connection.run(`SELECT * FROM ${TABLE} LIMIT 0`, [this.path]);
       return result.columnNames().map((name, i) => ({ name, type: String(result.columnType(i)) }));
     } catch (cause) {
       throw this.fault(0, cause);
@@ -101,19 +106,18 @@ export class OneFile {
   }
 
   /** The number of rows. */
-  async count(): Promise<number> {
-    try {
-      const result = await this.connection.run(`SELECT count(*)::DOUBLE FROM ${this.table}`, [this.path]);
-      return (await result.getRowsJS())[0][0] as number;
-    } catch (cause) {
-      throw this.fault(0, cause);
-    }
+  count(): Promise<number> {
+    return this.number(`SELECT count(*)::DOUBLE FROM ${TABLE}`);
   }
 
   /** Rows of the first group of rows; 0 where there is none. Writers make all groups but the last alike. */
-  async rowsOfGroup(): Promise<number> {
+  rowsOfGroup(): Promise<number> {
+    return this.number('SELECT row_group_num_rows::DOUBLE FROM parquet_metadata($1) LIMIT 1');
+  }
+
+  /** The one number that a query of the path `$1` gives; 0 where it gives none. */
+  private async number(sql: string): Promise<number> {
     try {
-      const sql = 'SELECT row_group_num_rows::DOUBLE FROM parquet_metadata($1) LIMIT 1';
       const rows = await (await this.connection.run(sql, [this.path])).getRowsJS();
       return (rows[0]?.[0] ?? 0) as number;
     } catch (cause) {
@@ -160,7 +164,7 @@ export class OneFile {
 
   private from({ columns }: Query): string {
     const names = Array.from({ length: columns }, (_, i) => `c${i}`);
-    return `${this.table} AS t(${names.join(', ')}) WHERE ${names.at(-1)} >= $2 AND ${names.at(-1)} < $3`;
+    return `${TABLE} AS t(${names.join(', ')}) WHERE ${names.at(-1)} >= $2 AND ${names.at(-1)} < $3`;
   }
 
   private bound({ from, to }: Query): DuckDBValue[] {

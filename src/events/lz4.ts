@@ -1,4 +1,5 @@
 import { InputError } from '../study/input-error';
+import { wordAt } from './word';
 import { xxHash32 } from './xxhash32';
 
 const FRAME_MAGIC = 0x184d2204;
@@ -139,9 +140,7 @@ class Lz4 {
 
   /** The next four bytes as an unsigned integer. */
   private word(): number {
-    const at = this.take(4);
-    const { bytes } = this;
-    return (bytes[at] | (bytes[at + 1] << 8) | (bytes[at + 2] << 16) | (bytes[at + 3] << 24)) >>> 0;
+    return wordAt(this.bytes, this.take(4)) >>> 0;
   }
 
   /** Passes over `count` bytes; where they began. */

@@ -1,3 +1,5 @@
+import { rotated, wordAt } from './word';
+
 const C1 = 0x239b961b;
 const C2 = 0xab0e9789;
 const C3 = 0x38b34ae5;
@@ -14,14 +16,14 @@ export function murmur128(bytes: Uint8Array, from: number, to: number, seed: num
   let h4 = seed;
   let p = from;
   for (; p + 16 <= to; p += 16) {
-    h1 ^= mix(word(bytes, p), C1, 15, C2);
-    h1 = (Math.imul((rotate(h1, 19) + h2) | 0, 5) + 0x561ccd1b) | 0;
-    h2 ^= mix(word(bytes, p + 4), C2, 16, C3);
-    h2 = (Math.imul((rotate(h2, 17) + h3) | 0, 5) + 0x0bcaa747) | 0;
-    h3 ^= mix(word(bytes, p + 8), C3, 17, C4);
-    h3 = (Math.imul((rotate(h3, 15) + h4) | 0, 5) + 0x96cd1c35) | 0;
-    h4 ^= mix(word(bytes, p + 12), C4, 18, C1);
-    h4 = (Math.imul((rotate(h4, 13) + h1) | 0, 5) + 0x32ac3b17) | 0;
+    h1 ^= mix(wordAt(bytes, p), C1, 15, C2);
+    h1 = (Math.imul((rotated(h1, 19) + h2) | 0, 5) + 0x561ccd1b) | 0;
+    h2 ^= mix(wordAt(bytes, p + 4), C2, 16, C3);
+    h2 = (Math.imul((rotated(h2, 17) + h3) | 0, 5) + 0x0bcaa747) | 0;
+    h3 ^= mix(wordAt(bytes, p + 8), C3, 17, C4);
+    h3 = (Math.imul((rotated(h3, 15) + h4) | 0, 5) + 0x96cd1c35) | 0;
+    h4 ^= mix(wordAt(bytes, p + 12), C4, 18, C1);
+    h4 = (Math.imul((rotated(h4, 13) + h1) | 0, 5) + 0x32ac3b17) | 0;
   }
   if (p + 12 < to) h4 ^= mix(tail(bytes, p + 12, to), C4, 18, C1);
   if (p + 8 < to) h3 ^= mix(tail(bytes, p + 8, to), C3, 17, C4);
@@ -47,16 +49,8 @@ function finish(h1: number, h2: number, h3: number, h4: number, out: Uint32Array
   out[3] = fourth;
 }
 
-function rotate(x: number, by: number): number {
-  return (x << by) | (x >>> (32 - by));
-}
-
 function mix(k: number, multiplier: number, turn: number, multiplier2: number): number {
-  return Math.imul(rotate(Math.imul(k, multiplier), turn), multiplier2);
-}
-
-function word(bytes: Uint8Array, p: number): number {
-  return bytes[p] | (bytes[p + 1] << 8) | (bytes[p + 2] << 16) | (bytes[p + 3] << 24);
+  return Math.imul(rotated(Math.imul(k, multiplier), turn), multiplier2);
 }
 
 /** Up to four last bytes as a word, absent ones zero. */

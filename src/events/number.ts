@@ -18,7 +18,7 @@ const FULL_DIGITS = 17;
 /** An exponent of more digits is left to `Number`: it is far outside the fast paths. */
 const MOST_EXPONENT_DIGITS = 4;
 
-/** Where `parseNumber` and others need a number itself: a double handed back by a function would be an object each. */
+/** Where `readDecimal` puts the number it read, beside the place that it gives back. */
 const held = new Float64Array(1);
 
 /**
@@ -28,12 +28,12 @@ const held = new Float64Array(1);
  * sign. No blanks, no hexadecimal, no digit separators. Too large a number is an infinity, too small a one is zero.
  */
 export function parseNumber(bytes: Uint8Array, from: number, to: number): number {
-  if (from < to && readDecimal(bytes, from, to, held, 0) === to) return held[0];
+  if (from < to && readDecimal(bytes, from, to) === to) return held[0];
   return parseInfinity(bytes, from, to);
 }
 
 /**
- * Reads the decimal number that begins at `from` into `into[at]`; the place of the first byte behind it, `to` at the
+ * Reads the decimal number that begins at `from` into `held`; the place of the first byte behind it, `to` at the
  * latest. Where none begins there that place is `from` and nothing is written.
  *
  * Numbers of at most 15 digits and a power of ten up to 22 take one correctly rounded operation on exact operands
@@ -41,7 +41,7 @@ export function parseNumber(bytes: Uint8Array, from: number, to: number): number
  * of programs that print doubles in full, are divided in double-double arithmetic (Dekker, Numer. Math. 18 (1971)
  * 224); where its error bound could touch a rounding boundary, and for everything else, `Number` reads the text.
  */
-function readDecimal(bytes: Uint8Array, from: number, to: number, into: Float64Array, at: number): number {
+function readDecimal(bytes: Uint8Array, from: number, to: number): number {
   let p = from;
   const negative = bytes[p] === MINUS;
   if (negative || bytes[p] === PLUS) p++;
@@ -82,7 +82,7 @@ function readDecimal(bytes: Uint8Array, from: number, to: number, into: Float64A
     exponent > LARGEST_EXACT_POWER ||
     exponent < -LARGEST_EXACT_POWER
   ) {
-    into[at] = Number(textOf(bytes, from, p));
+    held[0] = Number(textOf(bytes, from, p));
     return p;
   }
   const later = scale > INTEGER_DIGITS ? scale - INTEGER_DIGITS : 0;
@@ -92,9 +92,9 @@ function readDecimal(bytes: Uint8Array, from: number, to: number, into: Float64A
   if (digits <= EXACT_DIGITS) {
     const all = high + (middle + far);
     const size = exponent < 0 ? all / EXACT_POWERS[-exponent] : all * EXACT_POWERS[exponent];
-    into[at] = negative ? -size : size;
-  } else if (exponent > 0 || !divide(high, middle, far, EXACT_POWERS[-exponent], negative, into, at)) {
-    into[at] = Number(textOf(bytes, from, p));
+    held[0] = negative ? -size : size;
+  } else if (exponent > 0 || !divide(high, middle, far, EXACT_POWERS[-exponent], negative)) {
+    held[0] = Number(textOf(bytes, from, p));
   }
   return p;
 }
@@ -129,15 +129,7 @@ const QUOTIENT_ERROR = 2 ** -49;
  * Writes `(high + middle + far) / by`, correctly rounded, for integers of which `high` and `middle` are exact, `far` is
  * below 2^30 and `by` below 2^75; false where the result is too close to a rounding boundary to call.
  */
-function divide(
-  high: number,
-  middle: number,
-  far: number,
-  by: number,
-  negative: boolean,
-  into: Float64Array,
-  at: number,
-): boolean {
+function divide(high: number, middle: number, far: number, by: number, negative: boolean): boolean {
   const upper = high + middle;
   const lost = high > middle ? middle - (upper - high) : high - (upper - middle);
   const sum = upper + (lost + far);
@@ -148,7 +140,7 @@ function divide(
   const rounded = quotient + second;
   const left = second - (rounded - quotient);
   const bound = Math.abs(second) * QUOTIENT_ERROR;
-  into[at] = negative ? -rounded : rounded;
+  held[0] = negative ? -rounded : rounded;
   return rounded + (left + bound) === rounded && rounded + (left - bound) === rounded;
 }
 

@@ -11,9 +11,6 @@ import { ask, kindOf, type Asked } from './sql-columns';
 /** Fewer rows are not worth a stream of their own. */
 const LEAST_ROWS = 1_000_000;
 
-const TABLE =
-  'read_parquet($1, hive_partitioning = false, union_by_name = false, filename = false, file_row_number = true)';
-
 interface Detail {
   columns: number;
   from: number;
@@ -72,7 +69,7 @@ async function* readUnit(unit: Unit, needs: readonly Need[], signal?: AbortSigna
   const { path, name } = unit;
   const { columns, from, to, positions, types } = unit.detail as Detail;
   const asked = needs.map((need, i) => ask(need, types[i], `c${positions[i]}`, name));
-  const file = await OneFile.open(path, name, TABLE);
+  const file = await OneFile.open(path, name);
   try {
     yield* batchesOf(unit, needs, to - from, stretches(file, asked, columns, { from, to }, signal), signal);
   } finally {
@@ -107,7 +104,7 @@ function slabsOf(chunk: DuckDBDataChunk, asked: readonly Asked[]): Slab[] {
 async function withFile<T>(path: string, name: string, work: (file: OneFile) => Promise<T>): Promise<T> {
   // Tells an absent file from a damaged one.
   closeSync(openFile(path, name));
-  const file = await OneFile.open(path, name, TABLE);
+  const file = await OneFile.open(path, name);
   try {
     return await work(file);
   } finally {

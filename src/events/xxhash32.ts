@@ -1,3 +1,5 @@
+import { rotated, wordAt } from './word';
+
 const STRIPE = 16;
 const P1 = 0x9e3779b1;
 const P2 = 0x85ebca77;
@@ -27,12 +29,4 @@ export function xxHash32(bytes: Uint8Array, from: number, to: number): number {
   hash = Math.imul(hash ^ (hash >>> 15), P2);
   hash = Math.imul(hash ^ (hash >>> 13), P3);
   return (hash ^ (hash >>> 16)) >>> 0;
-}
-
-function wordAt(bytes: Uint8Array, at: number): number {
-  return bytes[at] | (bytes[at + 1] << 8) | (bytes[at + 2] << 16) | (bytes[at + 3] << 24);
-}
-
-function rotated(x: number, by: number): number {
-  return (x << by) | (x >>> (32 - by));
 }

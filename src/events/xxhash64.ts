@@ -1,3 +1,5 @@
+import { wordAt } from './word';
+
 /**
  * XXH64 with seed 0 (Yann Collet's published specification, "xxHash fast digest algorithm", version 0.1.1), the checksum
  * of zstd frames. 64-bit words are kept as pairs of 32-bit halves: BigInt would be slower by more than an order.
@@ -44,7 +46,7 @@ export class XxHash64 {
   private stripes(bytes: Uint8Array, from: number, to: number): void {
     for (let p = from; p < to; p += STRIPE) {
       for (let lane = 0; lane < 4; lane++) {
-        round(this.lanes, lane * 2, word(bytes, p + lane * 8), word(bytes, p + lane * 8 + 4));
+        round(this.lanes, lane * 2, wordAt(bytes, p + lane * 8), wordAt(bytes, p + lane * 8 + 4));
       }
     }
   }
@@ -76,12 +78,12 @@ function finishTail(h: Int32Array, bytes: Uint8Array, length: number): void {
   let p = 0;
   for (; p + 8 <= length; p += 8) {
     const k = new Int32Array(2);
-    round(k, 0, word(bytes, p), word(bytes, p + 4));
+    round(k, 0, wordAt(bytes, p), wordAt(bytes, p + 4));
     mixIn(h, k[0], k[1], 27, P1L, P1H);
     add(h, 0, h[0], h[1], P4L, P4H);
   }
   if (p + 4 <= length) {
-    const k = Int32Array.of(word(bytes, p), 0);
+    const k = Int32Array.of(wordAt(bytes, p), 0);
     multiply(k, 0, P1L, P1H);
     mixIn(h, k[0], k[1], 23, P2L, P2H);
     add(h, 0, h[0], h[1], P3L, P3H);
@@ -155,8 +157,4 @@ function highProduct(a: number, b: number): number {
   const outer = Math.imul(aHigh, bLow) >>> 0;
   const carry = (Math.imul(aLow, bLow) >>> 16) + (inner & 0xffff) + (outer & 0xffff);
   return (Math.imul(aHigh, bHigh) + (inner >>> 16) + (outer >>> 16) + (carry >>> 16)) | 0;
-}
-
-function word(bytes: Uint8Array, p: number): number {
-  return bytes[p] | (bytes[p + 1] << 8) | (bytes[p + 2] << 16) | (bytes[p + 3] << 24);
 }
