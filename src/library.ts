@@ -2,7 +2,8 @@
  * Entasis as a library: `import { ... } from 'entasis'`. The way of the data, in the order of use:
  *
  * 1. A study says what to do: `parseStudy`.
- * 2. Events become a tally: `tallyTable` (arrays in memory), `tallyFiles` (the study's files); `readerFor` reads the files alone.
+ * 2. Events become a tally: `tallyTable` (arrays in memory), `tallyFiles` (the study's files); `readerFor` reads the files
+ *    alone.
  * 3. A tally becomes a posterior, a summary and an audit: `analyse`.
  * 4. The posterior gives replicas of the response matrix: `drawReplicas`.
  * 5. A bundle that the program has written is opened and handed on: `openBundle`, `replicaBlocks`, `formatOf`.

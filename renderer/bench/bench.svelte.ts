@@ -18,7 +18,7 @@ import { Jobs } from './jobs.svelte';
 import { Looks } from './looks.svelte';
 import { Results } from './results.svelte';
 import { blankStudy, StudyFile } from './study-file.svelte';
-import { isTyping } from './text-field';
+import { isForField } from './text-field';
 
 export type StageName = 'events' | 'axes' | 'matrix' | 'audit' | 'hand-over';
 export const STAGE_TITLES: Record<StageName, string> = {
@@ -221,8 +221,7 @@ export class Bench {
   #hear(notice: Notice): void {
     if (notice.kind === 'progress') this.jobs.hear(notice);
     else if (notice.kind === 'open') void this.openStudy(notice.path);
-    else if ((notice.command === 'undo' || notice.command === 'redo') && isTyping())
-      document.execCommand(notice.command);
+    else if (isForField(notice.command)) document.execCommand(notice.command);
     else this.command(notice.command);
   }
 

@@ -14,6 +14,7 @@ import type { Study } from '../../src/study/study';
 import { axesOf, type Axes } from './axes';
 import type { Jobs } from './jobs.svelte';
 import { Latest } from './latest.svelte';
+import { baseName } from '../words/paths';
 import type { StudyFile } from './study-file.svelte';
 
 /** Files up to this size in all are read again by themselves when a cut or a role changes; larger ones on a button. */
@@ -108,8 +109,7 @@ export class Results {
   }
 
   async inspect(path: string): Promise<void> {
-    const name = path.split(/[/\\]/).at(-1) ?? path;
-    const answer = await this.jobs.run(`Looking into ${name}`, 'inspectFile', { path });
+    const answer = await this.jobs.run(`Looking into ${baseName(path)}`, 'inspectFile', { path });
     if (answer.ok || answer.code !== 'cancelled') this.inspections.set(path, answer.ok ? answer.value : answer);
   }
 

@@ -1,5 +1,20 @@
 import { path as makePath } from 'd3';
 
+/**
+ * The ends of the bars of a histogram whose edges stand at `places`. One value alone has no width: its bar is `alone` wide
+ * and stays between `least` and `most`.
+ */
+export function barEnds(
+  places: Float64Array,
+  alone: number,
+  least: number,
+  most: number,
+): { from: ArrayLike<number>; to: ArrayLike<number> } {
+  if (places.at(-1) !== places[0]) return { from: places.subarray(0, -1), to: places.subarray(1) };
+  const middle = Math.min(Math.max(places[0]!, least + alone / 2), most - alone / 2);
+  return { from: [middle - alone / 2], to: [middle + alone / 2] };
+}
+
 /** The outline of bars between `from[i]` and `to[i]` from the base line up to `at(i)`; bands of NaN are left out. */
 export function barsPath(
   from: ArrayLike<number>,

@@ -21,8 +21,8 @@ export interface Block {
 
 /**
  * Cuts a stream of bytes into blocks of whole lines. A last line without a line feed gets one. A line longer than
- * `LONGEST_LINE` arrives cut to one byte more than that, so that its reader can tell. Works in `bytes`, of length `ROOM`. Throws `InputError` at a NUL byte:
- * no text table holds one.
+ * `LONGEST_LINE` arrives cut to one byte more than that, so that its reader can tell. Works in `bytes`, of length `ROOM`.
+ * Throws `InputError` at a NUL byte: no text table holds one.
  */
 export class LineBlocks {
   private to = 0;

@@ -217,8 +217,8 @@ const LARGEST_POWER: usize = 22;
 
 /**
  * Writes the number `[from, to)` to `into` and returns true: digits, at most 24 bytes of them, with at most one point, a
- * minus sign and an exponent, or nothing at all (`NaN`). Correctly rounded. False for anything else, for too many digits, and where the
- * nearest double is too hard to tell.
+ * minus sign and an exponent, or nothing at all (`NaN`). Correctly rounded. False for anything else, for too many digits,
+ * and where the nearest double is too hard to tell.
  */
 function readNumber(from: usize, to: usize, into: usize): bool {
   if (from == to) {

@@ -56,8 +56,8 @@ export class Selection {
 
   /**
    * Selects the events of one batch and returns them with every rejected row of it, those the reader found included.
-   * The events may share the arrays of the batch, or those of the events before: whoever keeps them copies them. Throws `InputError` for a tag that the study does not list;
-   * `placeOf` names a row's place in it.
+   * The events may share the arrays of the batch, or those of the events before: whoever keeps them copies them. Throws
+   * `InputError` for a tag that the study does not list; `placeOf` names a row's place in it.
    */
   select(batch: Batch, placeOf: (place: number) => string): { events: Events; rejects: Reject[] } {
     const { ledger } = this;

@@ -1,8 +1,6 @@
 import { isMainThread, parentPort, Worker, workerData } from 'node:worker_threads';
 import { readerFor } from '../../out/main/library.js';
 
-/** Units that a worker reads at once, as the program does. */
-const AT_ONCE = 2;
 const UNITS_PER_WORKER = 8;
 
 /** Seconds in which `workers` workers, started already, read the needed columns of a file; nothing is tallied or hashed. */
@@ -38,7 +36,7 @@ async function readUnits({ path, needs, units }) {
       for await (const batch of reader.read(unit, needs)) rows += batch.rows;
     }
   };
-  await Promise.all(Array.from({ length: AT_ONCE }, lane));
+  await Promise.all(Array.from({ length: reader.atOnce ?? 1 }, lane));
   return rows;
 }
 
